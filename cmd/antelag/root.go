@@ -1,0 +1,39 @@
+package main
+
+import (
+	"github.com/spf13/cobra"
+
+	"antelag/scenarios"
+)
+
+const about = `antelag tunes the delay compensation of a real-time hybrid test before a
+specimen is put at risk: it runs the loop of numerical substructure, compensator,
+servo-hydraulic actuator and specimen tick by tick, and says with numbers
+whether the test would be accurate and stable.
+
+Without a command it runs the embedded scenario "` + scenarios.Default + `".
+
+` + cautions
+
+const cautions = `Caution: hydraulic actuators crush. This is a simulation; it is no interlock.
+Keep the hardware limits, the emergency stop and the lab's procedure. Local codes
+and the responsible licensed engineer decide.`
+
+func newRoot() *cobra.Command {
+	opts := &runOptions{}
+	root := &cobra.Command{
+		Use:           "antelag",
+		Short:         "tune the delay compensation of a real-time hybrid test",
+		Long:          about,
+		Args:          cobra.NoArgs,
+		Version:       version(),
+		SilenceErrors: true,
+		SilenceUsage:  true,
+		RunE: func(cmd *cobra.Command, _ []string) error {
+			return opts.run(cmd, []string{scenarios.Default})
+		},
+	}
+	root.SetVersionTemplate("antelag {{.Version}}\n")
+	root.AddCommand(newRun(), newScenarios(), newDescribe(), newVersion())
+	return root
+}

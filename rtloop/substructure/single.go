@@ -1,0 +1,101 @@
+package substructure
+
+// Most hybrid tests have one level, and there loops, blocks and calls cost
+// more than the arithmetic. Here stands the same arithmetic without them, in
+// the same order, so that it agrees with the general path to the last bit.
+
+// single reports whether the scalar paths apply: one level, no hysteresis.
+func (s *Structure) single() bool { return s.n == 1 && len(s.storeys) == 0 }
+
+// only returns the element of a matrix of one.
+func (a *matrix) only() float64 { return a.blocks[0].cols[0][0] }
+
+// state1 is state for one level.
+type state1 struct {
+	dt, k, c    float64
+	inverseMass float64
+	x, v, a     [1]float64
+}
+
+func newState1(st *state) state1 {
+	return state1{
+		dt: st.dt, k: st.s.stiffnessBlocks.only(), c: st.s.dampingBlocks.only(),
+		inverseMass: st.inverseMass.only(),
+	}
+}
+
+func (st *state1) X() []float64        { return st.x[:] }
+func (st *state1) V() []float64        { return st.v[:] }
+func (st *state1) A() []float64        { return st.a[:] }
+func (st *state1) Strain() float64     { return 0.5 * (st.x[0] * float64(st.k*st.x[0])) }
+func (st *state1) Hysteresis() float64 { return 0 }
+
+func (st *state1) Start(x0, p []float64) {
+	st.x[0], st.v[0] = 0, 0
+	copy(st.x[:], x0)
+	st.a[0] = st.inverseMass * st.balance(p[0], 0)
+}
+
+// balance returns p − c·v − k·x; the displacement, last to be known, comes last.
+func (st *state1) balance(p, v float64) float64 {
+	return p - float64(st.c*v) - float64(st.k*st.x[0])
+}
+
+// newmarkExplicit1 is newmarkExplicit for one level.
+type newmarkExplicit1 struct {
+	state1
+	half, w, inertia float64
+}
+
+var _ Integrator = (*newmarkExplicit1)(nil)
+
+func newNewmarkExplicit1(in *newmarkExplicit) *newmarkExplicit1 {
+	return &newmarkExplicit1{state1: newState1(&in.state), half: in.half, inertia: in.inertia.only()}
+}
+
+func (in *newmarkExplicit1) Centred() []float64 { return in.v[:] }
+
+func (in *newmarkExplicit1) Predict() {
+	w := plus(in.v[0], in.half, in.a[0])
+	in.w = w
+	in.x[0] = plus(in.x[0], in.dt, w)
+	in.v[0] = plus(w, in.half, in.a[0])
+}
+
+func (in *newmarkExplicit1) Correct(p []float64) {
+	in.a[0] = in.inertia * in.balance(p[0], in.w)
+	in.v[0] = plus(in.w, in.half, in.a[0])
+}
+
+// cr1 is cr for one level.
+type cr1 struct {
+	state1
+	gain, dv float64
+	centred  [1]float64
+}
+
+var _ Integrator = (*cr1)(nil)
+
+func newCR1(in *cr) *cr1 { return &cr1{state1: newState1(&in.state), gain: in.gain.only()} }
+
+func (in *cr1) Centred() []float64 { return in.centred[:] }
+
+func (in *cr1) Start(x0, p []float64) {
+	in.state1.Start(x0, p)
+	in.ahead()
+}
+
+func (in *cr1) Predict() {
+	in.v[0] += in.dv
+	in.x[0] = plus(in.x[0], in.dt, in.v[0])
+}
+
+func (in *cr1) Correct(p []float64) {
+	in.a[0] = in.inverseMass * in.balance(p[0], in.v[0])
+	in.ahead()
+}
+
+func (in *cr1) ahead() {
+	in.dv = in.gain * in.a[0]
+	in.centred[0] = plus(in.v[0], 0.5, in.dv)
+}

@@ -1,0 +1,216 @@
+package substructure
+
+import (
+	"math"
+	"math/rand/v2"
+	"sync"
+	"testing"
+
+	"antelag/plant"
+
+	"gonum.org/v1/gonum/mat"
+)
+
+// The scalar paths for one level give the very bits of the general ones.
+func TestOneLevelIsBitwiseTheGeneralPath(t *testing.T) {
+	random := rand.New(rand.NewPCG(3, 4))
+	for range 20 {
+		s := mustStoreys(t, []Storey{{Mass: 1e5 * random.Float64(), Stiffness: 1e8 * random.Float64()}},
+			Damping{Ratios: []float64{0.1 * random.Float64()}}, Attachment{0, 1, 1e7 * random.Float64()})
+		dt := 0.5 / s.Frequencies()[0] * random.Float64()
+		newmark, err := generalNewmarkExplicit(s, dt)
+		if err != nil {
+			t.Fatal(err)
+		}
+		chenRicles, err := generalCR(s, dt)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for name, general := range map[string]Integrator{"newmark-explicit": newmark, "CR": chenRicles} {
+			single := mustNew(t, name, s, dt)
+			switch single.(type) {
+			case *newmarkExplicit1, *cr1:
+			default:
+				t.Fatalf("%s of one level is a %T, not the scalar path", name, single)
+			}
+			p, x0 := []float64{0}, []float64{0.01 * random.Float64()}
+			single.Start(x0, p)
+			general.Start(x0, p)
+			for k := range 1000 {
+				same(t, name, k, single, general, s)
+				single.Predict()
+				general.Predict()
+				same(t, name, k, single, general, s)
+				s.GroundLoad(p, random.NormFloat64())
+				s.AddForce(p, 0, 1e6*s.Project(single.X(), 0))
+				single.Correct(p)
+				general.Correct(p)
+			}
+		}
+	}
+}
+
+func same(t *testing.T, name string, k int, a, b Integrator, s *Structure) {
+	t.Helper()
+	for i, pair := range [][2]float64{
+		{a.X()[0], b.X()[0]}, {a.V()[0], b.V()[0]}, {a.A()[0], b.A()[0]}, {a.Centred()[0], b.Centred()[0]}, {a.Strain(), b.Strain()},
+		{s.VMV(a.V()), s.massBlocks.quadratic(b.V())}, {s.VCV(a.V()), s.dampingBlocks.quadratic(b.V())},
+	} {
+		if math.Float64bits(pair[0]) != math.Float64bits(pair[1]) {
+			t.Fatalf("%s step %d, value %d: %x and %x", name, k, i, pair[0], pair[1])
+		}
+	}
+}
+
+// One level whose storey yields takes the general path; with hardening 1 it
+// is the linear storey.
+func TestHardeningOneIsLinear(t *testing.T) {
+	linear := mustStoreys(t, []Storey{{Mass: 60e3, Stiffness: 18e6, Damping: 1e5}}, Damping{})
+	yields := mustStoreys(t, []Storey{{Mass: 60e3, Stiffness: 18e6, Damping: 1e5, YieldDisplacement: 0.001, Hardening: 1}}, Damping{})
+	for _, name := range Names() {
+		a := newLoaded(linear, mustNew(t, name, linear, 0.01), 0)
+		b := newLoaded(yields, mustNew(t, name, yields, 0.01), 0)
+		for k := range 500 {
+			ug := math.Sin(0.1 * float64(k))
+			a.step(ug)
+			b.step(ug)
+			near(t, name, b.in.X()[0], a.in.X()[0], 1e-14)
+			near(t, name+" strain", b.in.Strain(), a.in.Strain(), 1e-9)
+			near(t, name+" hysteresis", b.in.Hysteresis(), 0, 1e-9) // of some hundreds of J
+		}
+	}
+}
+
+// Integrators share a structure and nothing else: runs side by side, each
+// with yielding storeys of its own, are the run alone. Also a run restarted.
+func TestIntegratorsAreIndependent(t *testing.T) {
+	s := twoYielding(t)
+	run := func(in Integrator) [2]float64 {
+		l := newLoaded(s, in, 0)
+		l.start(0)
+		for k := range 2000 {
+			l.step(3 * math.Sin(0.05*float64(k)))
+		}
+		return [2]float64{in.X()[1], in.Hysteresis()}
+	}
+	for _, name := range Names() {
+		once := mustNew(t, name, s, 0.005)
+		alone := run(once)
+		if again := run(once); again != alone {
+			t.Errorf("%s started again gives %v, at first %v", name, again, alone)
+		}
+		var results [4][2]float64
+		var wait sync.WaitGroup
+		for i := range results {
+			in := mustNew(t, name, s, 0.005)
+			wait.Go(func() { results[i] = run(in) })
+		}
+		wait.Wait()
+		for _, r := range results {
+			if r != alone {
+				t.Errorf("%s side by side gives %v, alone %v", name, r, alone)
+			}
+		}
+	}
+}
+
+// At rest under a load from a displacement beyond yield: the storey follows
+// its loading path, and a₀ = M⁻¹(p − K x₀ − h₀).
+func TestStartIsInBalance(t *testing.T) {
+	s := twoYielding(t)
+	x0, p := []float64{0.02, 0.025}, []float64{1e5, -2e5}
+	storey := plant.NewBoucWen(18e6, 0.006, 0.05, 1, 0.5)
+	h := storey.Advance(x0[0], 0, 0)
+	near(t, "first loading", h, 18e6*(0.05*0.02+0.95*0.006*(1-math.Exp(-0.02/0.006))), 1e-8) // of 1e5 N
+	want := []float64{(p[0] - h + 15e6*0.005) / 60e3, (p[1] - 15e6*0.005) / 50e3}
+	for _, name := range Names() {
+		in := mustNew(t, name, s, 0.005)
+		view := in.A()
+		in.Start(x0, p)
+		for i := range want {
+			near(t, name, in.A()[i], want[i], 1e-13)
+			near(t, name+" view", view[i], want[i], 1e-13)
+		}
+		if v := peak(in.V()); v != 0 || in.X()[0] != x0[0] || in.X()[1] != x0[1] || in.Hysteresis() != 0 {
+			t.Errorf("%s: not at rest at x0: x %v, v %v, dissipated %v", name, in.X(), in.V(), in.Hysteresis())
+		}
+	}
+}
+
+func TestProjectAndAddForce(t *testing.T) {
+	s := mustStoreys(t, []Storey{{Mass: 1, Stiffness: 1}, {Mass: 1, Stiffness: 1}, {Mass: 1, Stiffness: 1}}, Damping{},
+		Attachment{0, 2, 1}, Attachment{1, 3, 1}, Attachment{3, 0, 1})
+	x := []float64{1, 10, 100}
+	for i, want := range []float64{10, 99, -100} {
+		if got := s.Project(x, i); got != want {
+			t.Errorf("extension of attachment %d is %v, want %v", i, got, want)
+		}
+		// The force acts along the same b: p·x falls by r times the extension.
+		p := make([]float64, 3)
+		s.AddForce(p, i, 2)
+		if work := p[0]*x[0] + p[1]*x[1] + p[2]*x[2]; work != -2*want {
+			t.Errorf("attachment %d does the work %v, want %v", i, work, -2*want)
+		}
+	}
+	p := []float64{9, 9, 9}
+	s.GroundLoad(p, 3)
+	if p != nil && (p[0] != -3 || p[1] != -3 || p[2] != -3) {
+		t.Errorf("load of the ground is %v, want −3 each", p)
+	}
+}
+
+// Blocks of four rows with their zeros left out multiply like the matrix.
+func TestMatrixBlocks(t *testing.T) {
+	random := rand.New(rand.NewPCG(1, 2))
+	for n := 1; n <= 13; n++ {
+		for band := range n {
+			m := mat.NewDense(n, n, nil)
+			x, d := make([]float64, n), make([]float64, n)
+			for i := range n {
+				x[i], d[i] = random.NormFloat64(), random.NormFloat64()
+				for j := max(0, i-band); j <= min(n-1, i+band/2); j++ {
+					m.Set(i, j, random.NormFloat64())
+				}
+			}
+			var want mat.VecDense
+			want.MulVec(m, mat.NewVecDense(n, x))
+			a := newMatrix(m)
+			got := make([]float64, n)
+			a.mul(got, x)
+			less := append([]float64(nil), d...)
+			a.subtract(less, x)
+			for i := range n {
+				near(t, "A x", got[i], want.AtVec(i), 1e-14)
+				near(t, "d − A x", less[i], d[i]-want.AtVec(i), 1e-14)
+			}
+			near(t, "xᵀA x", a.quadratic(x), mat.Dot(mat.NewVecDense(n, x), &want), 1e-13)
+		}
+	}
+}
+
+func TestTickDoesNotAllocate(t *testing.T) {
+	three, _ := threeStoreys(t)
+	for _, s := range []*Structure{equalStoreys(t, 1), three, twoYielding(t)} {
+		for _, name := range Names() {
+			in := mustNew(t, name, s, 0.001)
+			p, total := make([]float64, s.N()), 0.0
+			if n := testing.AllocsPerRun(100, func() {
+				in.Predict()
+				s.GroundLoad(p, 1)
+				for j := range s.attachments {
+					s.AddForce(p, j, 6e6*s.Project(in.X(), j))
+				}
+				in.Correct(p)
+				total += s.VMV(in.V()) + s.VCV(in.V()) + s.AMA(in.A()) + in.Strain() + in.Hysteresis()
+			}); n != 0 {
+				t.Errorf("%s, %d levels: %v allocations a tick", name, s.N(), n)
+			}
+			if n := testing.AllocsPerRun(10, func() { in.Start(nil, p) }); n != 0 {
+				t.Errorf("%s, %d levels: Start allocates %v times", name, s.N(), n)
+			}
+			if !(total > 0) {
+				t.Errorf("%s, %d levels: no energy", name, s.N())
+			}
+		}
+	}
+}

@@ -1,0 +1,126 @@
+package scenarios
+
+import (
+	"fmt"
+	"io"
+	"slices"
+	"strings"
+	"text/tabwriter"
+
+	"antelag/compensator"
+	"antelag/plant"
+	"antelag/rtloop/excitation"
+	"antelag/rtloop/substructure"
+	"antelag/scenarios/kind"
+)
+
+// Chapter is one table of kinds of the manual.
+type Chapter struct {
+	Title  string
+	Header string // how a scenario opens a part of this sort
+	Kinds  []*kind.Kind
+}
+
+// Chapters lists everything that a scenario can hold, from the tables.
+func Chapters() []Chapter {
+	return []Chapter{
+		{"compensators", "[channel.compensator]", compensator.Kinds.Kinds()},
+		{"actuators", "[channel.actuator]", plant.Actuators.Kinds()},
+		{"specimens", "[[channel.specimen]]", plant.Elements.Kinds()},
+		{"excitations", "[excitation]", excitation.Kinds.Kinds()},
+		{"integrators", "", substructure.Integrators.Kinds()},
+		{"sections", "", Sections()},
+	}
+}
+
+// WriteManual writes the manual: of everything when name is "", of a chapter,
+// or of one kind.
+func WriteManual(w io.Writer, name string) error {
+	var out strings.Builder
+	known := []string{}
+	found := name == ""
+	for _, c := range Chapters() {
+		known = append(known, c.Title)
+		if name == "" || name == c.Title {
+			found = true
+			writeChapter(&out, c)
+		}
+		for _, k := range c.Kinds {
+			known = append(known, k.Name)
+			if name == k.Name {
+				found = true
+				writeKind(&out, c, k)
+			}
+		}
+	}
+	if !found {
+		slices.Sort(known)
+		return &kind.UnknownError{What: "kind or chapter", Got: name, Known: known}
+	}
+	if name == "" {
+		out.WriteString("antelag describe KIND shows its equation and settings.\n")
+	}
+	_, err := io.WriteString(w, out.String())
+	return err
+}
+
+func writeChapter(out *strings.Builder, c Chapter) {
+	fmt.Fprintf(out, "%s\n", c.Title)
+	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
+	for _, k := range c.Kinds {
+		fmt.Fprintf(t, "  %s\t%s\t%s\n", k.Name, k.Doc, k.Source)
+	}
+	t.Flush() //nolint:errcheck // a Builder does not fail
+	out.WriteString("\n")
+}
+
+func writeKind(out *strings.Builder, c Chapter, k *kind.Kind) {
+	fmt.Fprintf(out, "%s (%s): %s\n", k.Name, c.Title, k.Doc)
+	if k.Equation != "" {
+		fmt.Fprintf(out, "  equation  %s\n", k.Equation)
+	}
+	if k.Source != "" {
+		fmt.Fprintf(out, "  source    %s\n", k.Source)
+	}
+	if len(k.Settings) == 0 {
+		out.WriteString("  no settings\n\n")
+		return
+	}
+	out.WriteString("\n")
+	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
+	fmt.Fprintf(t, "  setting\tdefault\tallowed\tmeaning\n")
+	for i := range k.Settings {
+		s := &k.Settings[i]
+		fmt.Fprintf(t, "  %s\t%s\t%s\t%s\n", s.Name, defaultText(s), s.Allowed(), s.Doc)
+	}
+	t.Flush() //nolint:errcheck // a Builder does not fail
+	out.WriteString("\n")
+	if c.Header != "" {
+		out.WriteString(Example(c.Header, k))
+		out.WriteString("\n")
+	}
+}
+
+func defaultText(s *kind.Setting) string {
+	switch {
+	case s.IsRequired():
+		return "required"
+	case s.IsOptional():
+		return "none"
+	}
+	return s.FormatValue(s.Fallback)
+}
+
+// Example writes a block of a scenario that uses the kind: its defaults, and
+// for what has none a value in the middle of the sensible range.
+func Example(header string, k *kind.Kind) string {
+	var out strings.Builder
+	fmt.Fprintf(&out, "%s\nkind = %s\n", header, quote(k.Name))
+	for i := range k.Settings {
+		s := &k.Settings[i]
+		if value, ok := s.ExampleValue(); ok {
+			fmt.Fprintf(&out, "%s = %s\n", s.Name, value)
+		}
+	}
+	return out.String()
+}

@@ -1,0 +1,35 @@
+package scenarios
+
+import (
+	"fmt"
+	"slices"
+	"strings"
+	"time"
+
+	"antelag/scenarios/kind"
+)
+
+// ChannelNames lists the channels in order.
+func (s *Scenario) ChannelNames() []string { return channelNames(s.Channels) }
+
+// CheckLane complains about a lane that the scenario does not have.
+func (s *Scenario) CheckLane(name string) error {
+	known := []string{Configured}
+	for _, l := range s.Lanes {
+		known = append(known, l.Name)
+	}
+	if !slices.Contains(known, name) {
+		return &kind.UnknownError{What: "lane", Got: name, Known: known}
+	}
+	return nil
+}
+
+// Provenance writes where a log comes from: the whole resolved scenario, which
+// reads as a scenario again, with version, lane and start.
+func (s *Scenario) Provenance(version, lane string, start time.Time) string {
+	var out strings.Builder
+	s.WriteTo(&out) //nolint:errcheck // a Builder does not fail
+	fmt.Fprintf(&out, "\n[provenance]\nversion = %s\nscenario = %s\nlane = %s\nstart = %s\n",
+		quote(version), quote(s.Name), quote(lane), start.UTC().Format(time.RFC3339))
+	return out.String()
+}

@@ -1,0 +1,84 @@
+package scenarios
+
+import (
+	"antelag/plant"
+	"antelag/rtloop/excitation"
+	"antelag/scenarios/kind"
+	"antelag/scenarios/quantity"
+)
+
+// The fixed sections of a scenario, described like every kind.
+
+// Loop is the [loop] section.
+var loopSection = kind.Kind{
+	Name: "loop", Doc: "the fixed-rate loop", Source: "common practice",
+	Settings: []kind.Setting{
+		kind.Number("rate", quantity.Frequency, "ticks per physical second").Range(10, 100e3),
+		kind.Number("duration", quantity.Time, "length of the test in model time").Range(0.01, 7*86400),
+		kind.Number("slowdown", quantity.None, "physical seconds per model second; 1 is real time").Default(1).Range(1, 10000),
+		kind.Word("hold", "how a command gets from tick to tick: along a straight line, or at once", "ramp", "step"),
+		kind.Integer("seed", "seed of all noise, so that a run repeats bit for bit").Default(1).Range(0, 1<<53),
+		kind.Number("energy_window", quantity.Time, "trailing window of energy margin and synchronization subspace, model time; default: five periods of the first mode, or 5 s for a driven target").Optional().Range(0.01, 86400),
+	},
+}
+
+var substructureSection = kind.Kind{
+	Name: "substructure", Doc: "the numerical substructure: storeys, or full matrices", Source: "common practice",
+	Settings: []kind.Setting{
+		kind.FreeText("integrator", "how the structure is integrated; see describe integrators").DefaultText("CR"),
+		kind.Numbers("damping_ratio", quantity.None, "Rayleigh damping: the ratio of first and last mode of the whole structure, or one each").Optional().Range(0, 1),
+		kind.Matrix("mass_matrix", quantity.Mass, "full mass matrix, instead of storeys").Optional(),
+		kind.Matrix("stiffness_matrix", quantity.Stiffness, "full stiffness matrix, instead of storeys").Optional(),
+		kind.Matrix("damping_matrix", quantity.Damping, "full damping matrix, instead of a ratio").Optional(),
+		kind.Numbers("influence", quantity.None, "how the ground motion acts on each level of full matrices; default all 1").Optional().Range(-10, 10),
+	},
+}
+
+var storeySection = kind.Kind{
+	Name: "storey", Doc: "one storey of a shear building, the lowest first", Source: "common practice",
+	Settings: []kind.Setting{
+		kind.Number("mass", quantity.Mass, "mass of the level on top of the storey").Range(1e-3, 1e9),
+		kind.Number("stiffness", quantity.Stiffness, "initial lateral stiffness").Default(0).Range(0, 1e12),
+		kind.Number("damping", quantity.Damping, "dashpot between the levels, instead of a damping ratio").Default(0).Range(0, 1e12),
+		kind.Number("yield_displacement", quantity.Length, "storey drift at yield; without it the storey stays elastic").Optional().Range(1e-6, 10),
+		kind.Number("hardening", quantity.None, "stiffness after yield over initial stiffness").Default(0).Range(0, 1),
+	},
+}
+
+var excitationSection = kind.Kind{
+	Name: "excitation", Doc: "what shakes the structure; kind names the source", Source: "common practice",
+	Settings: []kind.Setting{
+		kind.Word("drives", "what the excitation acts as: ground acceleration, force on a level, or the target itself", excitation.Words...),
+		kind.Integer("level", "with drives = \"force\": the level that the force acts on; 0 is the topmost").Default(0).Range(0, 60),
+	},
+}
+
+var limitsSection = kind.Kind{
+	Name: "limits", Doc: "what a channel may reach before the loop trips", Source: "common practice",
+	Settings: []kind.Setting{
+		kind.Number("stroke", quantity.Length, "largest commanded or measured displacement").Optional().Range(1e-6, 100),
+		kind.Number("velocity", quantity.Velocity, "largest velocity of the actuator, physical").Optional().Range(1e-6, 100),
+		kind.Number("force", quantity.Force, "largest measured force").Optional().Range(1e-3, 1e10),
+		kind.Number("error", quantity.Length, "largest difference of target and measured").Optional().Range(1e-7, 100),
+	},
+}
+
+// acceptSection is the [accept] section. Package accept judges by it.
+var acceptSection = kind.Kind{
+	Name: "accept", Doc: "acceptance limits that a run must meet", Source: "common practice",
+	Settings: []kind.Setting{
+		kind.Number("nrmse", quantity.None, "largest rms tracking error over rms target").Optional().Range(0, 10),
+		kind.Number("delay", quantity.Time, "largest remaining delay, late or early").Optional().Range(0, 1),
+		kind.Number("peak_error", quantity.Length, "largest tracking error").Optional().Range(0, 10),
+		kind.Number("energy_margin", quantity.None, "smallest energy margin at any time of the run").Optional().Range(-10, 1),
+		kind.Number("response_error", quantity.None, "largest rms error of the structure's response over rms reference response").Optional().Range(0, 10),
+	},
+}
+
+// Sections lists the fixed sections, for the manual.
+func Sections() []*kind.Kind {
+	return []*kind.Kind{
+		&loopSection, &substructureSection, &storeySection, &excitationSection,
+		&plant.SensorSettings, &limitsSection, &acceptSection,
+	}
+}
