@@ -111,13 +111,11 @@ func (c *AdaptiveInverse) adaptAt(bound, out, growth float64) {
 	if ti*out <= 0 {
 		c.sum += ti * c.tick
 	}
-	c.alpha = c.base + c.kp*ti + c.ki*c.sum
-	if surplus := c.alpha - bound; surplus*out > 0 {
-		c.alpha = bound
-		if c.kp > 0 {
-			ti -= surplus / c.kp
-		}
+	alpha := c.base + c.kp*ti + c.ki*c.sum
+	if surplus := alpha - bound; surplus*out > 0 && c.kp > 0 {
+		ti -= surplus / c.kp
 	}
+	c.alpha = clamp(alpha, c.lo, c.hi)
 	if c.kp == 0 && growth*out > 0 {
 		ti = c.ti
 	}

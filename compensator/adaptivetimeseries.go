@@ -85,7 +85,7 @@ var _ Compensator = (*AdaptiveTimeSeries)(nil)
 
 // pivotFloor is the part of a column's own square that must be left after
 // the earlier columns have explained what they can. 10⁻³ is a band of about
-// ±1.5 % about one frequency, where the share of noise in Ÿ is no smaller.
+// ±1.6 % about one frequency, where the share of noise in Ÿ is no smaller.
 const pivotFloor = 1e-3
 
 // minWindowTicks is the fewest rows that a window may hold: enough more than

@@ -52,7 +52,7 @@ func TestPolynomialWeights(t *testing.T) {
 
 func TestPolynomialResponse(t *testing.T) {
 	const tick = 1.0 / 1000
-	for _, delay := range []float64{0, 0.0004, 0.001, 0.0083, 0.014, 0.0207, 0.1} {
+	for _, delay := range []float64{0, 0.0004, 0.001, 0.00203, 0.0083, 0.014, 0.0207, 0.1} {
 		for order := 0; order <= maxOrder; order++ {
 			c := build(t, tick, "polynomial", "order", order, "delay", delay)
 			for _, period := range []int{1000, 200, 40, 9} {

@@ -35,9 +35,11 @@ type Polynomial struct {
 	delay  float64
 	weight [maxOrder + 1]float64 // c_i
 
-	// The c_i spread over the ticks around t − iτ, in pairs: two sums side by
-	// side need not wait for each other's additions.
-	pairs [maxOrder + 1][2]tap
+	// The c_i spread over the ticks around t − iτ: the weight of the present
+	// target, and past targets in pairs, because two sums side by side need
+	// not wait for each other's additions.
+	now   float64
+	pairs [maxOrder][2]tap
 	count int
 
 	ring []float64 // targets, newest at head
@@ -94,7 +96,7 @@ func (p *Polynomial) Command(in Input) float64 {
 	head := (p.head + 1) & mask
 	p.head = head
 	ring[head] = in.X
-	even, odd := 0.0, 0.0
+	even, odd := p.now*in.X, 0.0
 	for i := range p.pairs[:(p.count+1)/2] {
 		t := &p.pairs[i]
 		even += t[0].weight * ring[(head-t[0].ago)&mask]
@@ -111,7 +113,7 @@ func (p *Polynomial) Retune(v kind.Values) error {
 		return err
 	}
 	p.order, p.delay = v.Int("order"), v.Num("delay")
-	p.count, p.pairs = 0, [maxOrder + 1][2]tap{}
+	p.now, p.count, p.pairs = 0, 0, [maxOrder][2]tap{}
 	binomial := 1.0
 	for i := 0; i <= p.order; i++ {
 		binomial *= float64(p.order+1-i) / float64(i+1)
@@ -135,6 +137,10 @@ func (p *Polynomial) Retune(v kind.Values) error {
 // the same tick share one tap.
 func (p *Polynomial) addTap(ago int, weight float64) {
 	if weight == 0 {
+		return
+	}
+	if ago == 0 {
+		p.now += weight
 		return
 	}
 	for i := range p.count {

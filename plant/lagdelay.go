@@ -25,10 +25,10 @@ var lagDelayKind = kind.Entry[NewActuator]{
 }
 
 const (
-	// onTick is how near, in ticks, a delay must be to a whole number of
+	// nearTick is how near, in ticks, a delay must be to a whole number of
 	// ticks to be taken for it. Settings carry some 1e-16 of rounding, and a
 	// nanotick is far below what any test could tell.
-	onTick = 1e-9
+	nearTick = 1e-9
 	// mostTicks bounds the history that a delay may ask for: 128 MiB.
 	mostTicks = 1 << 24
 )
@@ -77,7 +77,7 @@ type lagDelay struct {
 	gain float64
 
 	instant    bool    // T = 0
-	onTick     bool    // T = 0 and φ = 0
+	onTick     bool    // T = 0, and φ = 0 or Step: y = c
 	e          float64 // E
 	wb, wa     float64 // E + w_b and w_a
 	sc, sb     float64 // 1/s
@@ -118,7 +118,7 @@ func newLagDelay(t Timing, v kind.Values) (Actuator, error) {
 
 // split parts a delay in ticks into whole ticks and a fraction in [0, 1).
 func split(ticks float64) (n int, phi float64) {
-	if whole := math.Round(ticks); math.Abs(ticks-whole) <= onTick {
+	if whole := math.Round(ticks); math.Abs(ticks-whole) <= nearTick {
 		return int(whole), 0
 	}
 	whole := math.Floor(ticks)

@@ -285,3 +285,40 @@ func TestLagDelayRefusesWhatNoTableCatches(t *testing.T) {
 		}
 	}
 }
+
+// witness keeps what an element is told.
+type witness struct {
+	spring
+	moves           int
+	y, v, dt, start float64
+}
+
+func (w *witness) Start(y float64) { w.start = y }
+
+func (w *witness) Advance(y, v, dt float64) float64 {
+	w.moves++
+	w.y, w.v, w.dt = y, v, dt
+	return w.spring.Advance(y, v, dt)
+}
+
+func TestLagDelayMovesTheSpecimenOnceATick(t *testing.T) {
+	const h = 1.0 / 2048
+	for name, hold := range holds {
+		for _, given := range []set{{}, {"delay": 0.4 * h}, {"delay": 8e-3, "lag": 6e-3, "gain": 0.9}} {
+			a := actuator(t, "lag-delay", Timing{h, hold}, given)
+			w := &witness{spring: spring{k: 1000}}
+			s := NewSpecimen(w)
+			a.Start(0.03, s)
+			if w.start != 0.03 || s.Force() != 30 {
+				t.Errorf("%s: started at %v m with %v N", name, w.start, s.Force())
+			}
+			w.moves = 0
+			for k := range 100 {
+				y, v := a.Advance(0.03+0.01*math.Sin(0.2*float64(k)), s)
+				if w.moves != k+1 || w.y != y || w.v != v || w.dt != h || s.Force() != 1000*y {
+					t.Fatalf("%s, tick %d: the specimen was told %+v, not %v m, %v m/s", name, k, *w, y, v)
+				}
+			}
+		}
+	}
+}

@@ -16,7 +16,7 @@ var viscousKind = kind.Entry[NewElement]{
 		Equation: "f = c·|ẏ|^α·sgn ẏ",
 		Source:   "FEMA 356 (2000), fluid viscous devices",
 		Settings: []kind.Setting{
-			kind.Number("damping", quantity.Damping, "coefficient c of a linear damper; or give force and speed").Optional().Range(0, 1e12),
+			kind.Number("damping", quantity.Damping, "coefficient c of a linear damper; or give force and speed").Optional().Range(0, 1e12).Sample(`"50 kN*s/m"`),
 			kind.Number("force", quantity.Force, "force that the damper has at the given speed").Optional().Range(0, 1e9),
 			kind.Number("speed", quantity.Velocity, "speed at which it has the given force").Optional().Range(1e-6, 100),
 			kind.Number("exponent", quantity.None, "velocity exponent α; other than 1 with force and speed only").Default(1).Range(0.1, 2),

@@ -27,7 +27,7 @@ func (l *Loop) startEnergy() {
 // measureStructure fills in what the numerical substructure has at this
 // instant.
 func (l *Loop) measureStructure(t *gauge.EnergyTick) {
-	s, v := l.cfg.Structure, l.integrator.V()
+	s, v := l.cfg.Structure, l.integrator.Centred()
 	t.VCV = s.VCV(v)
 	t.VMV = s.VMV(v)
 	t.AMA = s.AMA(l.integrator.A())

@@ -1,6 +1,7 @@
 package scenarios
 
 import (
+	"errors"
 	"fmt"
 	"math"
 	"strconv"
@@ -347,8 +348,9 @@ func limits(v kind.Values) rtloop.Limits {
 // setting they could not work with first, "delay: …"; that setting's line is
 // then the place.
 func (d *document) settingError(path string, k *kind.Kind, err error) error {
-	if err == nil {
-		return nil
+	var placed *Error
+	if err == nil || errors.As(err, &placed) {
+		return err
 	}
 	name, rest, ok := strings.Cut(err.Error(), ": ")
 	if ok && k.Has(name) {

@@ -2,6 +2,7 @@ package scenarios
 
 import (
 	"fmt"
+	"maps"
 	"regexp"
 	"slices"
 	"strconv"
@@ -72,7 +73,9 @@ func (d *document) apply(c Change) error {
 	key := steps[len(steps)-1]
 	path = join(path, key)
 	if key == "kind" && at["kind"] != c.Value {
-		clear(at) // the settings of another kind mean nothing to this one
+		// The settings of another kind mean nothing to this one; what an
+		// excitation drives is no setting of its kind.
+		maps.DeleteFunc(at, func(k string, _ any) bool { return k != "drives" })
 	}
 	at[key] = parseValue(c.Value)
 	d.where[path] = where
@@ -154,19 +157,17 @@ type Located struct {
 // Locate finds a setting of a resolved scenario by its path, like
 // damper.compensator.delay, loop.rate or substructure.storey[1].mass.
 func (s *Scenario) Locate(path string) (Located, error) {
-	bad := func(err error) (Located, error) { return Located{}, fmt.Errorf("%s: %w", path, err) }
 	steps := strings.Split(path, ".")
 	if len(steps) < 2 {
-		return bad(fmt.Errorf("names no setting; a path is like loop.rate or damper.compensator.delay"))
+		return Located{}, fmt.Errorf("%q names no setting; a path is like loop.rate or damper.compensator.delay", path)
 	}
-	key := steps[len(steps)-1]
 	k, values, err := s.section(steps[:len(steps)-1])
 	if err != nil {
-		return bad(err)
+		return Located{}, err
 	}
-	setting, err := k.Setting(key)
+	setting, err := k.Setting(steps[len(steps)-1])
 	if err != nil {
-		return bad(err)
+		return Located{}, err
 	}
 	return Located{setting.In(s.Excitation.Drives.Dim()), values}, nil
 }

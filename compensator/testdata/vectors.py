@@ -75,19 +75,19 @@ def adaptive_time_series():
     dt = 1 / rate
     t = (np.arange(ticks) + 1) * dt
     x = v = a = 0
-    for amplitude, f, phase in (0.02, 1.3, 0.3), (0.012, 3.1, 1.0), (0.006, 5.7, 2.0):
+    for amplitude, f, phase in (0.03, 2.3, 0.3), (0.005, 2.9, 1.0), (0.0002, 5.7, 2.0):
         w = 2 * np.pi * f
         x = x + amplitude * np.sin(w * t + phase)
         v = v + amplitude * w * np.cos(w * t + phase)
         a = a - amplitude * w * w * np.sin(w * t + phase)
     sos = butter(4, cutoff, fs=rate, output="sos")
     zy = zu = 0 * sosfilt_zi(sos)
-    noise = np.random.default_rng(5).normal(scale=2e-4, size=ticks)
+    noise = np.random.default_rng(5).normal(scale=9e-5, size=ticks)
 
     c = np.array([1.0, 0.010, 0.010**2 / 2])
     u, y, coefficients = np.zeros(ticks), np.zeros(ticks), np.zeros((ticks, 3))
     Y, U = [0.0, 0.0], [0.0, 0.0]  # filtered, from two ticks before the start
-    plant, pole, learned = 0.0, np.exp(-dt / 0.009), 0
+    plant, pole, learned = 0.0, np.exp(-dt / 0.009), []
     for k in range(ticks):
         # The actuator: two ticks of delay, a lag of 9 ms, gain 0.93.
         plant = pole * plant + (1 - pole) * 0.93 * (u[k - 3] if k >= 3 else 0.0)
@@ -100,14 +100,14 @@ def adaptive_time_series():
         rows = np.column_stack([Yf[1:-1], (Yf[2:] - Yf[:-2]) / (2 * dt), (Yf[2:] - 2 * Yf[1:-1] + Yf[:-2]) / dt**2])
         if np.sqrt(np.sum((rows[:, 0] - rows[:, 0].mean()) ** 2) / window) >= threshold:
             c = np.linalg.lstsq(rows, Uf[1:-1], rcond=None)[0]
-            learned += 1
             # The plain solution is wanted: no bound and no pivot floor may act.
             r = np.linalg.qr(rows, mode="r")
-            assert r[2, 2] ** 2 > 2e-3 * np.sum(rows[:, 2] ** 2) and r[1, 1] ** 2 > 2e-3 * np.sum(rows[:, 1] ** 2), k
+            learned.append(np.min(np.diag(r)[1:] ** 2 / np.sum(rows[:, 1:] ** 2, axis=0)))
+            assert learned[-1] > 2e-3, (k, learned[-1])
             assert 0.1 < c[0] < 10 and 0 < c[1] / c[0] < 0.5 and 0 < c[2] < 0.25, (k, c)
         coefficients[k] = c
         u[k] = c @ [x[k], v[k], a[k]]
-    print("learned in", learned, "of", ticks, "ticks; last", c)
+    print("learned in", len(learned), "of", ticks, "ticks; pivots from", min(learned), "to", max(learned), "; last", c)
     save("adaptive_time_series.csv", "x,v,a,y,u,a0,a1,a2", x, v, a, y, u, coefficients)
 
 

@@ -63,12 +63,9 @@ func ReadRecord(r io.Reader, name string, step float64) (Record, error) {
 	if math.IsNaN(step) || math.IsInf(step, 0) || step < 0 {
 		return Record{}, fmt.Errorf("step: %v s between values; it must be above zero", step)
 	}
-	data, err := io.ReadAll(io.LimitReader(r, maxRecordBytes+1))
+	data, err := readAll(r, name, maxRecordBytes)
 	if err != nil {
-		return Record{}, fmt.Errorf("%s: %w", name, err)
-	}
-	if len(data) > maxRecordBytes {
-		return Record{}, fmt.Errorf("%s: larger than 64 MB, the largest record file that is read", name)
+		return Record{}, err
 	}
 	s := &lines{data: bytes.TrimPrefix(data, []byte("\xef\xbb\xbf")), name: name}
 	var rec Record
@@ -86,6 +83,18 @@ func ReadRecord(r io.Reader, name string, step float64) (Record, error) {
 		return Record{}, fmt.Errorf("%s: %d values found; a record needs at least 2", name, n)
 	}
 	return rec, nil
+}
+
+// readAll reads up to limit bytes and refuses a longer file.
+func readAll(r io.Reader, name string, limit int64) ([]byte, error) {
+	data, err := io.ReadAll(io.LimitReader(r, limit+1))
+	if err != nil {
+		return nil, fmt.Errorf("%s: %w", name, err)
+	}
+	if int64(len(data)) > limit {
+		return nil, fmt.Errorf("%s: larger than %g MB, the largest record file that is read", name, float64(limit)/1e6)
+	}
+	return data, nil
 }
 
 // lines walks over the lines of a file, ended by LF, CR LF or CR alone.

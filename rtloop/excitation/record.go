@@ -21,7 +21,7 @@ var recordKind = kind.Entry[New]{
 			kind.FreeText("file", "file of the record, relative to the scenario"),
 			kind.Number("step", quantity.Time, "time between values; every number of the file is then a value").
 				Range(1e-6, 3600).Optional(),
-			kind.FreeText("unit", "unit of the file's values; AT2 files say theirs").Optional(),
+			kind.FreeText("unit", "unit of the file's values; AT2 files say theirs").Optional().Sample(`"g"`),
 			kind.Number("scale", quantity.None, "factor on the values").Default(1).Range(-1e6, 1e6),
 			kind.Number("start", quantity.Time, "record time that becomes t = 0; without it the first sample").
 				Range(-longest, longest).Optional(),

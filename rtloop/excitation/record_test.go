@@ -155,6 +155,7 @@ func TestRecordErrorsNameTheSetting(t *testing.T) {
 		{func(v kind.Values) { v["file"] = kind.Text("new.at2"); delete(v, "unit") }, Target,
 			`unit: "g" is an acceleration (m/s^2); with drives = "target" the record is taken as displacement, so its unit must be a length (m)`},
 		{func(v kind.Values) { v["file"] = kind.Text("new.at2"); delete(v, "unit") }, Ground, ""},
+		{text("unit", "G"), Ground, `unit: unknown unit "G"; did you mean "g"?`},
 		{text("file", "columns8.txt"), Ground, "columns8.txt:2: 8 columns found where time and value must stand; if every number is a value, give step"},
 	} {
 		v := kind.Values{"file": kind.Text("blanks.txt"), "unit": kind.Text("g")}

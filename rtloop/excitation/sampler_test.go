@@ -122,7 +122,7 @@ func TestLongRealizationHasTheVarianceOfItsClosedForm(t *testing.T) {
 		"oscillator":    {oscillator(t, w, z, s0, 0.02), math.Pi * s0 / (2 * z * w * w * w)},
 		"ground filter": {groundFilter(t, w, z, s0, 0.02), math.Pi * s0 * w * (1 + 4*z*z) / (2 * z)},
 	} {
-		const n = 1000000
+		const n = 400000
 		sum := 0.0
 		for range n {
 			y := c.s.draw()

@@ -212,7 +212,7 @@ func (e *Energy) AddedDamping() float64 {
 	return addedDamping(r.injected, r.motion, r.acceleration)
 }
 
-// addedDamping is −W_i/(2ω̂∫vᵀMv), with ω̂∫vᵀMv = √(∫aᵀMa·∫vᵀMv).
+// addedDamping is −W_i/(2ω̂∫vᵀMv), with ω̂∫vᵀMv = √(∫aᵀMa·∫vᵀMv); never −0.
 func addedDamping(injected, motion, acceleration float64) float64 {
-	return -injected / (2 * math.Sqrt(motion) * math.Sqrt(acceleration))
+	return (0 - injected) / (2 * math.Sqrt(motion) * math.Sqrt(acceleration))
 }

@@ -17,8 +17,9 @@ import (
 // also when the measured displacement did not.
 //
 // The transform has no window and no padding. It takes the record whole when its
-// length has no prime factor above 13 and else leaves out what comes first, at
-// most a few thousandths, to reach such a length.
+// length has no prime factor above 13. Else it leaves out what comes first to reach
+// such a length: less than 2 % of a record of 500 ticks or more, less than 1 % from
+// 5000 on.
 type FEI struct {
 	Amplitude float64 // |FEI|
 	Delay     float64 // −arg(FEI)/(2π·f_eq), s, positive when late
@@ -74,7 +75,7 @@ func (s *feiSums) result(tick float64) FEI {
 		Frequency: s.mean / s.power / tick,
 	}
 	if index != 0 {
-		f.Delay = -cmplx.Phase(index) / (2 * math.Pi * f.Frequency)
+		f.Delay = (0 - cmplx.Phase(index)) / (2 * math.Pi * f.Frequency) // never −0
 	}
 	return f
 }

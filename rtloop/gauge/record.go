@@ -10,9 +10,11 @@ const segment = 1 << 20
 
 // Alignment is how measured lies to target over a whole run.
 type Alignment struct {
-	// Delay is where the cross-correlation peaks, s, negative when early; NaN
-	// when target or measured never moved, or when no peak lies within the
-	// lags searched. See correlate.
+	// Delay is where target and measured correlate best, s, negative when
+	// early: the peak, with a parabola through it, of the correlation
+	// coefficient of their overlapping parts. It is searched up to half a second
+	// or a quarter of the record, whichever is less. NaN when either never moved
+	// and when no peak lies within the lags searched.
 	Delay float64
 	FEI   FEI
 }
@@ -30,6 +32,7 @@ type Alignment struct {
 type Record struct {
 	buf     []point
 	n       int
+	room    int // len(buf)
 	spare   []point
 	sums    *alignment // of the folded segments, nil while there is none
 	folding sync.WaitGroup
@@ -51,6 +54,7 @@ func newRecord(tick float64, ticks, segment int) *Record {
 	} else {
 		r.buf = make([]point, ticks)
 	}
+	r.room = len(r.buf)
 	if ticks > segment {
 		r.spare = make([]point, segment)
 	}
@@ -65,7 +69,7 @@ func (r *Record) Start(x, y float64) {
 
 // Add takes the sample of one tick.
 func (r *Record) Add(x, y float64) {
-	if r.n >= len(r.buf) {
+	if r.n == r.room { // a field, so that Add is small enough to be inlined
 		r.full()
 	}
 	r.buf[r.n] = point{x, y}
@@ -79,7 +83,7 @@ func (r *Record) full() {
 	if len(r.buf) < r.segment {
 		grown := make([]point, r.segment)
 		copy(grown, r.buf)
-		r.buf = grown
+		r.buf, r.room = grown, len(grown)
 		return
 	}
 	r.folding.Wait()
@@ -111,7 +115,7 @@ func (r *Record) Finish() Alignment {
 		return alignOnce(rest, r.tick, w)
 	}
 	sums := r.sums
-	if len(rest) >= 4*sums.lags.max {
+	if len(rest) >= max(1, 4*sums.lags.max) {
 		sums = sums.clone()
 		sums.fold(rest, w)
 	}
@@ -160,7 +164,7 @@ func alignOnce(samples []point, tick float64, w *workspace) Alignment {
 		return a
 	}
 	stride := min(w.stride(), max(1, most/8))
-	coarse := w.correlate(stride, most/stride)
+	coarse := w.correlate(stride, most/stride+2) // so that a peak near the end is seen
 	best := pickPeak(coarse, stride)
 	full := overlap{x: w.x, y: w.y}
 	full.total()

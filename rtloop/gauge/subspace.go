@@ -79,7 +79,7 @@ func (t *Tracking) Subspace() Ellipse {
 		return q
 	}
 	omega := 2 * math.Asin(half)
-	q.Phase = math.Atan2(m.area/float64(steps)/math.Sin(omega), 2*xy)
+	q.Phase = math.Atan2(m.area/float64(steps)/math.Sin(omega), 2*xy) + 0 // never −0
 	q.Delay = q.Phase / omega
 	return q
 }

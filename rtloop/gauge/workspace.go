@@ -74,7 +74,7 @@ func (w *workspace) load(samples []point) {
 // transform works out the spectra fx and fy of the record and returns how many
 // samples, the last ones, went in.
 func (w *workspace) transform() int {
-	n := smooth(len(w.x), 8)
+	n := smooth(len(w.x))
 	if n < 2 {
 		w.fx, w.fy = w.fx[:0], w.fy[:0]
 		return 0
@@ -148,13 +148,11 @@ func (w *workspace) stride() int {
 	return stride
 }
 
-// smooth returns the largest length up to n without a prime factor above 13:
-// n itself, or else one that is a multiple of the given number, if n is as large.
-func smooth(n, multiple int) int {
-	if isSmooth(n) || n < multiple {
-		return n
-	}
-	for n -= n % multiple; !isSmooth(n); n -= multiple {
+// smooth returns the largest length up to n without a prime factor above 13, the
+// lengths for which a transform does not cost many times its neighbours.
+func smooth(n int) int {
+	for n > 1 && !isSmooth(n) {
+		n--
 	}
 	return n
 }

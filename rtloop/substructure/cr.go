@@ -87,6 +87,11 @@ func (in *cr) Start(x0, p []float64) {
 	in.ahead()
 }
 
+func (in *cr) SetState(x, v, a []float64) {
+	in.state.SetState(x, v, a)
+	in.ahead()
+}
+
 func (in *cr) Predict() {
 	n := len(in.dv)
 	x, v := in.x[:n], in.v[:n]

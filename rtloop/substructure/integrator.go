@@ -14,8 +14,8 @@ import (
 // the load that holds then.
 //
 // A method that weights the equation of motion between t_k and t_{k+1} keeps
-// what it needs of t_k itself; what it is given is always the load at
-// t_{k+1}. A method that corrects the displacement afterwards, for the
+// what it needs of t_k itself; what it is given is always the load at t_{k+1}.
+// A method that corrects the displacement afterwards, for the
 // specimens' initial stiffness acting on the correction, shows the
 // displacement sent to the specimens between Predict and Correct and the
 // corrected one from then on.
@@ -26,6 +26,11 @@ type Integrator interface {
 	// under the load p, N, at t = 0, and finds the accelerations there.
 	// Hysteretic storeys start at x0 as if moved there slowly.
 	Start(x0, p []float64)
+	// SetState puts the structure into a state as it is after Correct, to see
+	// what becomes of it. Of a linear structure the methods newmark-explicit
+	// and CR remember x, v, a and no more. Hysteretic storeys start at x as if
+	// moved there slowly.
+	SetState(x, v, a []float64)
 	// Predict moves on from x_k, v_k, a_k: X becomes the displacements at
 	// t_{k+1}, V the velocities there as far as they are known; A remains a_k.
 	Predict()
@@ -34,12 +39,12 @@ type Integrator interface {
 	// off here and are no part of p. It completes A and V. p is not kept.
 	Correct(p []float64)
 	// X, V, A are views of the state, m, m/s, m/s²: the same slices for the
-	// life of the integrator.
+	// life of the integrator, to be read only.
 	X() []float64
 	V() []float64
 	A() []float64
 	// Centred returns the velocities at the tick to second order in dt, m/s,
-	// once Correct has been called: V itself, but where a method's V belongs
+	// good from Correct until the next Predict: V itself, but where a method's V belongs
 	// to another time than X. Take it for energies: with V of such a method
 	// their balance closes with the first power of the step only. It is one
 	// slice for the life of the integrator too.
@@ -131,6 +136,13 @@ func (st *state) Start(x0, p []float64) {
 	st.yielding.start(st.x)
 	st.balance(p, st.v)
 	st.inverseMass.mul(st.a, st.rest)
+}
+
+func (st *state) SetState(x, v, a []float64) {
+	copy(st.x, x)
+	copy(st.v, v)
+	copy(st.a, a)
+	st.yielding.start(st.x)
 }
 
 // balance sets rest to p − C v − K x − h.

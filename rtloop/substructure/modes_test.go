@@ -3,6 +3,7 @@ package substructure
 import (
 	"fmt"
 	"math"
+	"slices"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
@@ -54,6 +55,18 @@ func TestShapesAreMassNormalised(t *testing.T) {
 			}
 			near(t, "φᵀMφ", m.At(i, j), wantM, 1e-13)
 			near(t, "φᵀKφ", k.At(i, j), wantK, 1e-13*k.At(2, 2))
+		}
+	}
+}
+
+func TestShapesPointUp(t *testing.T) {
+	for n := 1; n <= 10; n++ {
+		s := equalStoreys(t, n)
+		for j := range n {
+			column := mat.Col(nil, j, s.Shapes())
+			if slices.Max(column) < peak(column)*(1-1e-9) {
+				t.Errorf("%d storeys: the largest element of shape %d is negative: %v", n, j+1, column)
+			}
 		}
 	}
 }
@@ -139,6 +152,12 @@ func TestStaticShape(t *testing.T) {
 	}
 	for i, want := range []float64{0.01, 0.03, 0.03} {
 		near(t, fmt.Sprintf("x%d", i+1), x[i], want, 1e-16)
+	}
+	for i := range 100 { // the level asked for stands there to the last bit
+		d := 0.001 * float64(i)
+		if x, err := s.Static(3, d); err != nil || x[2] != d {
+			t.Errorf("level 3 stands at %v (%v), want %v", x, err, d)
+		}
 	}
 	for _, level := range []int{0, 4} {
 		if _, err := s.Static(level, 0.03); err == nil {

@@ -36,6 +36,10 @@ func (st *state1) Start(x0, p []float64) {
 	st.a[0] = st.inverseMass * st.balance(p[0], 0)
 }
 
+func (st *state1) SetState(x, v, a []float64) {
+	st.x[0], st.v[0], st.a[0] = x[0], v[0], a[0]
+}
+
 // balance returns p − c·v − k·x; the displacement, last to be known, comes last.
 func (st *state1) balance(p, v float64) float64 {
 	return p - float64(st.c*v) - float64(st.k*st.x[0])
@@ -92,6 +96,11 @@ func (in *cr1) Predict() {
 
 func (in *cr1) Correct(p []float64) {
 	in.a[0] = in.inverseMass * in.balance(p[0], in.v[0])
+	in.ahead()
+}
+
+func (in *cr1) SetState(x, v, a []float64) {
+	in.state1.SetState(x, v, a)
 	in.ahead()
 }
 

@@ -42,6 +42,9 @@ func (s *Setting) ExampleValue() (text string, ok bool) {
 	if s.IsOptional() {
 		return "", false
 	}
+	if s.Type == TextType {
+		return `"motion.txt"`, true
+	}
 	if s.Driven {
 		return typical[quantity.Acceleration], true
 	}

@@ -133,11 +133,17 @@ func (e *UnknownError) Error() string {
 }
 
 // Nearest returns the known name that is closest to got by edit distance, or
-// "" when none is close enough to be a slip of the pen.
+// that got is the beginning of, or "" when none is close enough to be a slip of
+// the pen.
 func Nearest(got string, known []string) string {
+	for _, name := range known {
+		if len(got) > 2 && strings.HasPrefix(strings.ToLower(name), strings.ToLower(got)) {
+			return name
+		}
+	}
 	best, bestDistance := "", max(2, len(got)/2)+1
 	for _, name := range known {
-		if d := levenshtein.ComputeDistance(strings.ToLower(got), name); d < bestDistance {
+		if d := levenshtein.ComputeDistance(strings.ToLower(got), strings.ToLower(name)); d < bestDistance {
 			best, bestDistance = name, d
 		}
 	}
