@@ -17,7 +17,7 @@ import (
 // u the command, m; x, v, a the target's displacement, m, velocity, m/s, and
 // acceleration, m/s²; a₁ in s, a₂ in s². An actuator of gain g and delay τ
 // starts from a₀ = 1/g, a₁ = τ/g, a₂ = τ²/(2g). The actuator's delay is read
-// as a₁/a₀, its amplitude ratio as 1/a₀.
+// as a₁/a₀, its gain as 1/a₀.
 //
 // The coefficients are those that best explain the commands of the window by
 // what was measured,
@@ -127,7 +127,7 @@ func newAdaptiveTimeSeries(tick float64, v kind.Values) (Compensator, error) {
 	c.filter = newLowpass(set.cutoff, tick)
 	c.win.resize(set.ticks(tick))
 	c.apply(set)
-	c.Start(0)
+	c.Start(0, 0)
 	return c, nil
 }
 
@@ -188,13 +188,13 @@ func (s *timeSeriesSettings) startValues() (a0, delay, a2 float64) {
 	return 1 / s.gain, s.delay, s.delay * s.delay / (2 * s.gain)
 }
 
-// Start forgets all that was learned; the filters have measured x, and the
+// Start forgets all that was learned; the filters have measured y, and the
 // command a₀·x, as their whole past.
-func (c *AdaptiveTimeSeries) Start(x float64) {
+func (c *AdaptiveTimeSeries) Start(x, y float64) {
 	c.place(c.set.startValues())
 	c.last = c.a0 * x
-	c.measured, c.commanded = c.filter.at(x), c.filter.at(c.last)
-	c.older, c.centre, c.partner = x, x, c.last
+	c.measured, c.commanded = c.filter.at(y), c.filter.at(c.last)
+	c.older, c.centre, c.partner = y, y, c.last
 	c.settle = 0
 	c.win.clear()
 }
@@ -289,12 +289,12 @@ func (c *AdaptiveTimeSeries) Retune(v kind.Values) error {
 }
 
 // Coefficients appends the coefficients, the actuator's delay a₁/a₀ and its
-// amplitude ratio 1/a₀.
+// gain 1/a₀.
 func (c *AdaptiveTimeSeries) Coefficients(dst []Coefficient) []Coefficient {
 	return append(dst,
 		Coefficient{"a0", c.a0, quantity.None},
 		Coefficient{"a1", c.a1, quantity.Time},
 		Coefficient{"a2", c.a2, quantity.Dim{Time: 2}},
 		Coefficient{"delay", c.delay, quantity.Time},
-		Coefficient{"amplitude", 1 / c.a0, quantity.None})
+		Coefficient{"gain", 1 / c.a0, quantity.None})
 }

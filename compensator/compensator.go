@@ -24,9 +24,9 @@ type Input struct {
 // Compensator turns targets into commands, one call a tick. A compensator
 // holds its whole history and allocates nothing in Command.
 type Compensator interface {
-	// Start forgets the past and fills the history as if target and measured
-	// displacement had been x, m, for ever.
-	Start(x float64)
+	// Start forgets the past and fills the history as if the target had been x
+	// and the measured displacement y, m, for ever.
+	Start(x, y float64)
 	// Command returns the command u_k, m: the displacement to ask of the
 	// actuator for t_{k+1}. Inputs must be finite; the loop sees to that.
 	Command(in Input) float64
@@ -53,5 +53,6 @@ type New func(tick float64, v kind.Values) (Compensator, error)
 
 // Kinds is the table of compensator kinds.
 var Kinds = kind.Table[New]{What: "compensator", Entries: []kind.Entry[New]{
-	noneKind, polynomialKind, inverseKind, adaptiveInverseKind, adaptiveTimeSeriesKind,
+	noneKind, polynomialKind, linearAccelerationKind, taylorKind, modelInverseKind, inverseKind,
+	leastSquaresPolynomialKind, delaySeekingKind, adaptiveInverseKind, adaptiveTimeSeriesKind,
 }}

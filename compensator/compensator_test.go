@@ -6,6 +6,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"os"
+	"slices"
 	"strconv"
 	"strings"
 	"testing"
@@ -22,11 +23,15 @@ func given(t testing.TB, name string, nameValue ...any) kind.Values {
 	}
 	v := kind.Values{}
 	for i := 0; i < len(nameValue); i += 2 {
-		n := nameValue[i+1]
-		if whole, ok := n.(int); ok {
-			n = float64(whole)
+		name := nameValue[i].(string)
+		switch x := nameValue[i+1].(type) {
+		case int:
+			v[name] = kind.Num(float64(x))
+		case float64:
+			v[name] = kind.Num(x)
+		case string:
+			v[name] = kind.Text(x)
 		}
-		v[nameValue[i].(string)] = kind.Num(n.(float64))
 	}
 	v, err = e.Resolve(v)
 	if err != nil {
@@ -47,6 +52,49 @@ func build(t testing.TB, tick float64, name string, nameValue ...any) Compensato
 		t.Fatal(err)
 	}
 	return c
+}
+
+// variant is a kind with settings under which it is another method.
+type variant struct {
+	kind string
+	set  []any
+}
+
+func (v variant) String() string {
+	if len(v.set) == 0 {
+		return v.kind
+	}
+	return fmt.Sprintf("%s %v", v.kind, v.set)
+}
+
+func (v variant) build(t testing.TB, tick float64, nameValue ...any) Compensator {
+	t.Helper()
+	return build(t, tick, v.kind, v.with(nameValue...)...)
+}
+
+func (v variant) with(nameValue ...any) []any { return append(slices.Clone(v.set), nameValue...) }
+
+// adaptive is every method that adapts.
+var adaptive = []variant{
+	{"least-squares-polynomial", []any{"adapt", "delay"}},
+	{"least-squares-polynomial", []any{"adapt", "delay-and-amplitude"}},
+	{"delay-seeking", nil},
+	{"adaptive-inverse", nil},
+	{"adaptive-time-series", nil},
+}
+
+// variants is every kind with its defaults, and what other settings make of it.
+func variants() []variant {
+	all := []variant{{"model-inverse", []any{"order", 3}}}
+	for _, name := range Kinds.Names() {
+		all = append(all, variant{name, nil})
+	}
+	for _, v := range adaptive {
+		if v.set != nil {
+			all = append(all, v)
+		}
+	}
+	return all
 }
 
 // value finds a coefficient by name.
@@ -113,25 +161,38 @@ func inputs(n int, tick, late float64) []Input {
 	return in
 }
 
+func TestKindsStandInTheirOrder(t *testing.T) {
+	want := []string{"none", "polynomial", "linear-acceleration", "taylor", "model-inverse", "inverse",
+		"least-squares-polynomial", "delay-seeking", "adaptive-inverse", "adaptive-time-series"}
+	if got := Kinds.Names(); !slices.Equal(got, want) {
+		t.Errorf("kinds %v, want %v", got, want)
+	}
+}
+
 func TestEverySettingBuildsOrNamesItselfAtBothEndsOfItsRange(t *testing.T) {
-	for i := range Kinds.Entries {
-		e := &Kinds.Entries[i]
+	for _, variant := range variants() {
+		e, err := Kinds.Find(variant.kind)
+		if err != nil {
+			t.Fatal(err)
+		}
 		for _, rate := range []float64{128, 2048, 10000} {
 			in := inputs(200, 1/rate, 0.02)
 			for _, s := range e.Settings {
-				if s.Type != kind.NumberType && s.Type != kind.IntegerType {
-					continue
-				}
-				if math.IsInf(s.Min, 0) || math.IsInf(s.Max, 0) || !s.HasDefault() {
-					t.Errorf("%s.%s has no range or no default", e.Name, s.Name)
-					continue
-				}
-				for _, x := range []float64{s.Min, s.Max} {
-					what := fmt.Sprintf("%s at %v Hz with %s = %v", e.Name, rate, s.Name, x)
-					v, err := e.Resolve(kind.Values{s.Name: kind.Num(x)})
-					if err != nil {
-						t.Fatalf("%s: %v", what, err)
+				var values []kind.Value
+				switch {
+				case s.Type == kind.WordType:
+					for _, word := range s.Words {
+						values = append(values, kind.Text(word))
 					}
+				case math.IsInf(s.Min, 0) || math.IsInf(s.Max, 0) || !s.HasDefault():
+					t.Errorf("%s.%s has no range or no default", e.Name, s.Name)
+				default:
+					values = append(values, kind.Num(s.Min), kind.Num(s.Max))
+				}
+				for _, x := range values {
+					what := fmt.Sprintf("%v at %v Hz with %s = %s", variant, rate, s.Name, s.FormatValue(x))
+					v := given(t, variant.kind, variant.set...)
+					v[s.Name] = x
 					c, err := e.New(1/rate, v)
 					if err != nil {
 						if !strings.Contains(err.Error(), s.Name) {
@@ -181,6 +242,21 @@ func TestBadSettingsAreRefusedByNameAndChangeNothing(t *testing.T) {
 		{"polynomial", "delay", -0.001, "delay: -1 ms is below 0"},
 		{"polynomial", "delay", math.NaN(), "delay: NaN is no finite number"},
 		{"inverse", "delay", 0.6, "delay: 600 ms is above 500 ms"},
+		{"linear-acceleration", "delay", 0.6, "delay: 600 ms is above 500 ms"},
+		{"taylor", "delay", math.Inf(1), "delay: +Inf is no finite number"},
+		{"model-inverse", "order", 4, "order: 4 is above 3"},
+		{"model-inverse", "order", 0, "order: 0 is below 1"},
+		{"model-inverse", "gain", 0, "gain: 0 is below 0.5"},
+		{"model-inverse", "lag", -0.001, "lag: -1 ms is below 0"},
+		{"least-squares-polynomial", "order", 6, "order: 6 is above 5"},
+		{"least-squares-polynomial", "points", 2, "points: 2 is not above order, 2"},
+		{"least-squares-polynomial", "points", 201, "points: 201 is above 200"},
+		{"least-squares-polynomial", "amplitude_min", 1.1, "amplitude_min: 1.1 is above 1"},
+		{"delay-seeking", "order", 5, "order: 5 is above 4"},
+		{"delay-seeking", "rate", 21, "rate: 21 Hz is above 20 Hz"},
+		{"delay-seeking", "speed_floor", 0, "speed_floor: 0 "},
+		{"delay-seeking", "delay_min", 0.02, "delay: 10 ms is below delay_min, 20 ms"},
+		{"delay-seeking", "delay", 0.06, "delay: 60 ms is above delay_max, 50 ms"},
 		{"adaptive-inverse", "kp", -1, "kp: "},
 		{"adaptive-inverse", "delay_min", 0.06, "delay_min: 60 ms is above delay_max, 50 ms"},
 		{"adaptive-inverse", "delay", 0.06, "delay: 60 ms is above delay_max, 50 ms"},
@@ -223,6 +299,20 @@ func TestBadSettingsAreRefusedByNameAndChangeNothing(t *testing.T) {
 	if _, err := newPolynomial(tick, kind.Values{}); err == nil || !strings.HasPrefix(err.Error(), "order: no value") {
 		t.Errorf("unresolved settings: error %v", err)
 	}
+	// A delay out of the bounds matters only where it adapts.
+	wild := []any{"delay", 0.1, "adapt", "off"}
+	build(t, tick, "least-squares-polynomial", wild...)
+	wild[3] = "delay"
+	if _, err := newLeastSquaresPolynomial(tick, given(t, "least-squares-polynomial", wild...)); err == nil ||
+		!strings.HasPrefix(err.Error(), "delay: 100 ms is above delay_max, 50 ms") {
+		t.Errorf("a delay above its bound: error %v", err)
+	}
+	word := given(t, "least-squares-polynomial")
+	word["adapt"] = kind.Text("dely")
+	if _, err := newLeastSquaresPolynomial(tick, word); err == nil ||
+		!strings.HasPrefix(err.Error(), `adapt: unknown word "dely"; did you mean "delay"?`) {
+		t.Errorf("an unknown word: error %v", err)
+	}
 	slow := given(t, "adaptive-time-series", "window", 0.05)
 	if _, err := newAdaptiveTimeSeries(0.01, slow); err == nil || !strings.HasPrefix(err.Error(), "window: ") {
 		t.Errorf("a window of 5 ticks: error %v", err)
@@ -233,25 +323,24 @@ func TestBadSettingsAreRefusedByNameAndChangeNothing(t *testing.T) {
 }
 
 func TestAtRestTheCommandIsTheTarget(t *testing.T) {
-	for i := range Kinds.Entries {
-		e := &Kinds.Entries[i]
-		c := build(t, 1.0/2048, e.Name)
+	for _, v := range variants() {
+		c := v.build(t, 1.0/2048)
 		for _, in := range inputs(3000, 1.0/2048, 0.02) {
 			c.Command(in) // a past to be forgotten
 		}
 		for _, x := range []float64{0, 0.0173, -2.5} {
-			c.Start(x)
+			c.Start(x, x)
 			for k := range 5000 {
 				// Every method has unit gain at rest with default settings.
 				// 1e-13: weights as large as 40 (here 1+τ/dt) round at 1e-16.
 				if u := c.Command(Input{X: x, Y: x}); math.Abs(u-x) > 1e-13*math.Abs(x) {
-					t.Fatalf("%s at rest at %v: command %v in tick %d", e.Name, x, u, k)
+					t.Fatalf("%s at rest at %v: command %v in tick %d", v, x, u, k)
 				}
 			}
 		}
 	}
 	c := build(t, 1.0/2048, "adaptive-time-series", "gain", 0.8)
-	c.Start(0.02)
+	c.Start(0.02, 0.02)
 	for range 5000 {
 		if u := c.Command(Input{X: 0.02, Y: 0.02}); math.Abs(u-0.025) > 1e-15 {
 			t.Fatalf("gain 0.8 at rest at 20 mm: command %v, want 25 mm", u)
@@ -260,33 +349,31 @@ func TestAtRestTheCommandIsTheTarget(t *testing.T) {
 }
 
 func TestStartForgetsThePast(t *testing.T) {
-	for i := range Kinds.Entries {
-		e := &Kinds.Entries[i]
-		used, fresh := build(t, 1.0/1024, e.Name), build(t, 1.0/1024, e.Name)
+	for _, v := range variants() {
+		used, fresh := v.build(t, 1.0/1024), v.build(t, 1.0/1024)
 		for _, in := range inputs(4000, 1.0/1024, 0.02) {
 			used.Command(in)
 		}
-		used.Start(0)
+		used.Start(0, 0)
 		for k, in := range inputs(4000, 1.0/1024, 0.02) {
 			if a, b := used.Command(in), fresh.Command(in); a != b {
-				t.Fatalf("%s: tick %d after Start gives %v, a new one %v", e.Name, k, a, b)
+				t.Fatalf("%s: tick %d after Start gives %v, a new one %v", v, k, a, b)
 			}
 		}
 	}
 }
 
 func TestRetuneWithTheSameSettingsChangesNoBit(t *testing.T) {
-	for i := range Kinds.Entries {
-		e := &Kinds.Entries[i]
-		a, b := build(t, 1.0/1024, e.Name), build(t, 1.0/1024, e.Name)
+	for _, v := range variants() {
+		a, b := v.build(t, 1.0/1024), v.build(t, 1.0/1024)
 		for k, in := range inputs(5000, 1.0/1024, 0.025) {
 			if k%77 == 0 {
-				if err := b.Retune(given(t, e.Name)); err != nil {
+				if err := b.Retune(given(t, v.kind, v.set...)); err != nil {
 					t.Fatal(err)
 				}
 			}
 			if ua, ub := a.Command(in), b.Command(in); ua != ub {
-				t.Fatalf("%s: command %v in tick %d, retuned %v", e.Name, ua, k, ub)
+				t.Fatalf("%s: command %v in tick %d, retuned %v", v, ua, k, ub)
 			}
 		}
 	}
@@ -294,9 +381,8 @@ func TestRetuneWithTheSameSettingsChangesNoBit(t *testing.T) {
 
 func TestTheTickAllocatesNothing(t *testing.T) {
 	in := inputs(4096, 1.0/1024, 0.02)
-	for i := range Kinds.Entries {
-		e := &Kinds.Entries[i]
-		c := build(t, 1.0/1024, e.Name)
+	for _, v := range variants() {
+		c := v.build(t, 1.0/1024)
 		dst := make([]Coefficient, 0, 32)
 		k := 0
 		allocs := testing.AllocsPerRun(4000, func() {
@@ -305,7 +391,7 @@ func TestTheTickAllocatesNothing(t *testing.T) {
 			k++
 		})
 		if allocs != 0 {
-			t.Errorf("%s allocates %v times a tick", e.Name, allocs)
+			t.Errorf("%s allocates %v times a tick", v, allocs)
 		}
 	}
 }
@@ -314,10 +400,13 @@ var sink float64
 
 func BenchmarkCommand(b *testing.B) {
 	in := inputs(256, 1.0/2048, 0.014)
-	for i := range Kinds.Entries {
-		e := &Kinds.Entries[i]
-		c := build(b, 1.0/2048, e.Name)
-		b.Run(e.Name, func(b *testing.B) {
+	for _, v := range variants() {
+		c := v.build(b, 1.0/2048)
+		name := v.kind
+		if len(v.set) > 0 {
+			name += fmt.Sprintf("-%v", v.set[1])
+		}
+		b.Run(name, func(b *testing.B) {
 			b.ReportAllocs()
 			sum := 0.0
 			for k := range b.N {

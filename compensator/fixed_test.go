@@ -11,7 +11,7 @@ import (
 // the history is full. With e^(jωt) for the sine, and equal spacing over
 // whole periods, the fit is the projection 2/N·Σ u·e^(−jωt).
 func response(c Compensator, tick float64, period, lead int) complex128 {
-	c.Start(0)
+	c.Start(0, 0)
 	w := 2 * math.Pi / float64(period)
 	n := 4 * period
 	var sum complex128
@@ -170,6 +170,13 @@ func TestFixedMethodsRetuneAsIfSetSoAllAlong(t *testing.T) {
 		{"polynomial", []any{"order", 1, "delay", 0.0003}},
 		{"polynomial", []any{"order", 0}},
 		{"inverse", []any{"delay", 0.021}},
+		{"linear-acceleration", []any{"delay", 0.0213}},
+		{"linear-acceleration", []any{"delay", maxDelay}},
+		{"taylor", []any{"delay", 0.021}},
+		{"model-inverse", []any{"gain", 0.9, "delay", 0.008, "lag", 0.006, "order", 3}},
+		{"model-inverse", []any{"order", 1}},
+		{"least-squares-polynomial", []any{"order", 1, "points", 25, "delay", 0.003}},
+		{"least-squares-polynomial", []any{"order", 5, "points", maxPoints, "delay", 0.1}},
 	} {
 		retuned, all := build(t, tick, test.kind), build(t, tick, test.kind, test.set...)
 		for k, in := range inputs(3000, tick, 0) {
@@ -190,10 +197,21 @@ func TestFixedMethodsRetuneAsIfSetSoAllAlong(t *testing.T) {
 // times the steepest slope that the method sees.
 func TestRetuneJumpsNoMoreThanTheChange(t *testing.T) {
 	const tick, change = 1.0 / 1024, 1e-4
-	// Slope of the target in motion(): at most Σ amplitude·ω = 0.325 m/s.
-	// The command's slope in τ is Σ i·|c_i| ≤ 6+8+3 = 17 times that at n = 3
-	// (i·|c_i| of 4 −6 4 −1), and once that for inverse.
-	for name, steepness := range map[string]float64{"polynomial": 17, "inverse": 1, "adaptive-inverse": 1} {
+	// The target in motion() has at most a slope of Σ amplitude·ω = 0.325 m/s,
+	// an acceleration of Σ amplitude·ω² = 4.1 m/s² and a jerk of 63 m/s³. The
+	// command's slope in τ, in units of 0.325 m/s, with τ = 10.1 ms:
+	for name, steepness := range map[string]float64{
+		"polynomial":    17, // Σ i·|c_i| = 6+8+3 of the weights 4 −6 4 −1
+		"delay-seeking": 17,
+		"inverse":       1, "adaptive-inverse": 1,
+		// v + τa
+		"taylor": 1.13, "model-inverse": 1.13,
+		// v + 2τ(2/3·a − 1/6·a(t−τ)) + τ²/6 times the jerk
+		"linear-acceleration": 1.22,
+		// Σ_i |Σ_{l≤i} dw_l/dτ|·dt for weights w of order 2, 40 points and
+		// 10.1 ms: 2.903 by steepness in testdata/vectors.py.
+		"least-squares-polynomial": 2.91,
+	} {
 		a, b := build(t, tick, name), build(t, tick, name)
 		largest := 0.0
 		for k, in := range inputs(3000, tick, 0.01) {

@@ -49,7 +49,7 @@ func newInverse(tick float64, v kind.Values) (Compensator, error) {
 }
 
 // Start makes the previous target x.
-func (c *Inverse) Start(x float64) { c.x = x }
+func (c *Inverse) Start(x, _ float64) { c.x = x }
 
 // Command returns the target led by the delay.
 func (c *Inverse) Command(in Input) float64 {

@@ -30,7 +30,7 @@ func newNone(tick float64, v kind.Values) (Compensator, error) {
 }
 
 // Start does nothing: there is no history.
-func (*None) Start(float64) {}
+func (*None) Start(_, _ float64) {}
 
 // Command returns the target.
 func (*None) Command(in Input) float64 { return in.X }

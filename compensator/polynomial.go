@@ -84,7 +84,7 @@ func newPolynomial(tick float64, v kind.Values) (Compensator, error) {
 }
 
 // Start makes the past targets x.
-func (p *Polynomial) Start(x float64) {
+func (p *Polynomial) Start(x, _ float64) {
 	for i := range p.ring {
 		p.ring[i] = x
 	}
@@ -113,14 +113,9 @@ func (p *Polynomial) Retune(v kind.Values) error {
 		return err
 	}
 	p.order, p.delay = v.Int("order"), v.Num("delay")
+	p.weight = polynomialWeights(p.order)
 	p.now, p.count, p.pairs = 0, 0, [maxOrder][2]tap{}
-	binomial := 1.0
 	for i := 0; i <= p.order; i++ {
-		binomial *= float64(p.order+1-i) / float64(i+1)
-		p.weight[i] = binomial
-		if i%2 == 1 {
-			p.weight[i] = -binomial
-		}
 		at := float64(i) * p.delay / p.tick
 		whole := math.Floor(at)
 		frac := at - whole
@@ -131,6 +126,19 @@ func (p *Polynomial) Retune(v kind.Values) error {
 		p.addTap(int(whole)+1, p.weight[i]*frac)
 	}
 	return nil
+}
+
+// polynomialWeights are c_i = (−1)^i·C(n+1, i+1) for i = 0 to n.
+func polynomialWeights(order int) (weight [maxOrder + 1]float64) {
+	binomial := 1.0
+	for i := 0; i <= order; i++ {
+		binomial *= float64(order+1-i) / float64(i+1)
+		weight[i] = binomial
+		if i%2 == 1 {
+			weight[i] = -binomial
+		}
+	}
+	return weight
 }
 
 // addTap adds a weight to the target so many ticks ago; terms that fall on

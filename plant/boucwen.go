@@ -116,6 +116,13 @@ func (b *BoucWen) Advance(y, _, _ float64) float64 {
 	return f
 }
 
+// Preview returns the force that Advance would return, N, and changes nothing.
+func (b *BoucWen) Preview(y, _, _ float64) float64 {
+	next := *b
+	next.follow(y)
+	return next.force(y)
+}
+
 // Energy returns what is stored now and what was dissipated since Start, J.
 func (b *BoucWen) Energy() (stored, dissipated float64) {
 	stored = b.stored()

@@ -145,7 +145,7 @@ func TestLagDelayVelocityObeysTheEquation(t *testing.T) {
 		for _, phi := range []float64{0, 1e-6, 0.3, 0.999999} {
 			a := actuator(t, "lag-delay", Timing{h, hold}, set{"delay": (2 + phi) * h, "lag": lag, "gain": gain})
 			s := NewSpecimen()
-			a.Start(0.02, s)
+			near(t, "start", a.Start(0.02/gain, s), 0.02, 1e-17)
 			u := make([]float64, 300)
 			r := rand.New(rand.NewPCG(5, 6))
 			for k := range u {
@@ -308,8 +308,8 @@ func TestLagDelayMovesTheSpecimenOnceATick(t *testing.T) {
 			a := actuator(t, "lag-delay", Timing{h, hold}, given)
 			w := &witness{spring: spring{k: 1000}}
 			s := NewSpecimen(w)
-			a.Start(0.03, s)
-			if w.start != 0.03 || s.Force() != 30 {
+			y0 := a.Start(0.03, s)
+			if w.start != y0 || s.Force() != 1000*y0 {
 				t.Errorf("%s: started at %v m with %v N", name, w.start, s.Force())
 			}
 			w.moves = 0

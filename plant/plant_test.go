@@ -5,6 +5,7 @@ import (
 	"math"
 	"math/cmplx"
 	"os"
+	"slices"
 	"strings"
 	"testing"
 
@@ -164,7 +165,7 @@ func TestEveryKindBuildsFromItsRequiredSettings(t *testing.T) {
 	}
 	for _, e := range Elements.Entries {
 		given := required(e.Kind)
-		if e.Name == "viscous" { // needs one of two sets of settings, so none is required
+		if e.Name == "viscous" || e.Name == "maxwell" { // need one of two sets of settings, so none is required
 			given["damping"] = 1e5
 		}
 		element(t, e.Name, given)
@@ -206,6 +207,26 @@ func TestBadSettingsAreRefusedByName(t *testing.T) {
 		{"viscous", set{"force": 1}, "speed: is missing"},
 		{"viscous", set{"speed": 1}, "force: is missing"},
 		{"viscous", set{"force": 1, "speed": 0}, "speed: "},
+		{"maxwell", set{"damping": 1}, "stiffness: is missing"},
+		{"maxwell", set{"stiffness": 1}, "damping: is missing; maxwell needs"},
+		{"maxwell", set{"stiffness": 1, "damping": 1, "speed": 1}, "damping: is given beside speed"},
+		{"bilinear", set{"stiffness": 1}, "yield_displacement: is missing"},
+		{"bilinear", set{"stiffness": 1, "yield_displacement": 0}, "yield_displacement: "},
+		{"bilinear", set{"stiffness": 1, "yield_displacement": 1, "hardening": 2}, "hardening: "},
+		{"friction", set{"stiffness": 1, "normal_force": 1, "slow": 0.1}, "fast: is missing"},
+		{"friction", set{"stiffness": 1, "normal_force": 1, "slow": 0.1, "fast": 3}, "fast: "},
+		{"friction", set{"stiffness": 1, "normal_force": 1, "slow": 0.1, "fast": 0.1, "speed": 0}, "speed: "},
+		{"cubic", set{"stiffness": 1}, "cubic: is missing"},
+		{"gap", set{"stiffness": 1, "gap": -1}, "gap: "},
+		{"mass", set{"mass": -1}, "mass: "},
+		{"second-order", set{"frequency": 0}, "frequency: "},
+		{"second-order", set{"damping_ratio": -1}, "damping_ratio: "},
+		{"second-order", set{"delay": nan}, "delay: "},
+		{"servo-hydraulic", set{"supply_pressure": 0}, "supply_pressure: "},
+		{"servo-hydraulic", set{"piston_mass": -1}, "piston_mass: "},
+		{"servo-hydraulic", set{"leakage": -1}, "leakage: "},
+		{"servo-hydraulic", set{"kdp": inf}, "kdp: "},
+		{"servo-hydraulic", set{"delay": 2}, "delay: "},
 		{"bouc-wen", set{"stiffness": 1}, "yield_displacement: is missing"},
 		{"bouc-wen", set{"yield_displacement": 1}, "stiffness: is missing"},
 		{"bouc-wen", set{"stiffness": 1, "yield_displacement": 0}, "yield_displacement: "},
@@ -214,7 +235,7 @@ func TestBadSettingsAreRefusedByName(t *testing.T) {
 		{"bouc-wen", set{"stiffness": 1, "yield_displacement": 1, "hardening": 1.1}, "hardening: "},
 	} {
 		var err error
-		if c.kind == "lag-delay" {
+		if slices.Contains(Actuators.Names(), c.kind) {
 			_, err = makeActuator(c.kind, Timing{Tick: 1e-3}, c.given)
 		} else {
 			_, err = makeElement(c.kind, c.given)
@@ -236,6 +257,13 @@ func TestNothingAllocatesInATick(t *testing.T) {
 		"bouc-wen, n = 2":       NewBoucWen(1e6, 0.01, 0.1, 2, 0.7),
 		"bouc-wen, n = 3.5":     NewBoucWen(1e6, 0.01, 0.1, 3.5, 0.3),
 		"bouc-wen, n = 1, soft": NewBoucWen(1e6, 0.01, 0.1, 1, 0.3),
+		"maxwell, linear":       element(t, "maxwell", set{"stiffness": 1e7, "damping": 1e5}),
+		"maxwell, power":        element(t, "maxwell", set{"stiffness": 1e7, "force": 1e5, "speed": 1, "exponent": 0.3}),
+		"bilinear":              element(t, "bilinear", set{"stiffness": 1e7, "yield_displacement": 0.01}),
+		"friction":              element(t, "friction", set{"stiffness": 1e8, "normal_force": 1e6, "slow": 0.05, "fast": 0.1}),
+		"cubic":                 element(t, "cubic", set{"stiffness": 1e6, "cubic": 1e9}),
+		"gap":                   element(t, "gap", set{"stiffness": 1e6, "gap": 0.01}),
+		"mass":                  element(t, "mass", set{"mass": 100}),
 	}
 	all := make([]Element, 0, len(parts))
 	k := 0.0
@@ -252,15 +280,21 @@ func TestNothingAllocatesInATick(t *testing.T) {
 	}
 	s := NewSpecimen(all...)
 	for _, hold := range []Hold{Ramp, Step} {
-		for _, given := range []set{{}, {"delay": 8e-3}, {"delay": 8.1e-3, "lag": 6e-3}} {
-			a := actuator(t, "lag-delay", Timing{5e-4, hold}, given)
+		for _, c := range []struct {
+			kind  string
+			given set
+		}{
+			{"lag-delay", set{}}, {"lag-delay", set{"delay": 8e-3}}, {"lag-delay", set{"delay": 8.1e-3, "lag": 6e-3}},
+			{"second-order", set{"delay": 8.1e-3}}, {"servo-hydraulic", set{}},
+		} {
+			a := actuator(t, c.kind, Timing{5e-4, hold}, c.given)
 			a.Start(0, s)
 			if n := testing.AllocsPerRun(500, func() {
 				k++
 				a.Advance(0.03*math.Sin(0.1*k), s)
 				s.Energy()
 			}); n != 0 {
-				t.Errorf("lag-delay %v: %v allocations in a tick", given, n)
+				t.Errorf("%s %v: %v allocations in a tick", c.kind, c.given, n)
 			}
 		}
 	}
@@ -277,6 +311,26 @@ func BenchmarkLagDelayAlone(b *testing.B) {
 func BenchmarkLagDelayBoucWen(b *testing.B) {
 	a := actuator(b, "lag-delay", Timing{Tick: 1.0 / 2048}, set{"delay": 8e-3, "lag": 6e-3})
 	run(b, a, NewSpecimen(NewBoucWen(2e7, 0.01, 0.1, 1, 0.5)))
+}
+
+func BenchmarkSecondOrder(b *testing.B) {
+	run(b, actuator(b, "second-order", Timing{Tick: 1.0 / 2048}, set{"delay": 8e-3}), NewSpecimen())
+}
+
+func BenchmarkServoHydraulic(b *testing.B) {
+	for _, c := range []struct {
+		name     string
+		elements []Element
+	}{
+		{"alone", nil},
+		{"spring", []Element{element(b, "spring", set{"stiffness": 1e7})}},
+		{"bouc-wen", []Element{NewBoucWen(2e7, 0.01, 0.1, 1, 0.5)}},
+		{"viscous 0.3", []Element{element(b, "viscous", set{"force": 1e5, "speed": 1, "exponent": 0.3})}},
+	} {
+		b.Run(c.name, func(b *testing.B) {
+			run(b, actuator(b, "servo-hydraulic", Timing{Tick: 1.0 / 2048}, nil), NewSpecimen(c.elements...))
+		})
+	}
 }
 
 // run drives an actuator by 1.5 Hz sines of 30 mm, made beforehand.
@@ -305,6 +359,14 @@ func BenchmarkElement(b *testing.B) {
 		{"bouc-wen/1/soft", NewBoucWen(2e7, 0.01, 0.1, 1, 0.4)},
 		{"bouc-wen/2", NewBoucWen(2e7, 0.01, 0.1, 2, 0.5)},
 		{"bouc-wen/3.5", NewBoucWen(2e7, 0.01, 0.1, 3.5, 0.5)},
+		{"maxwell/1", element(b, "maxwell", set{"stiffness": 1e8, "damping": 1e6})},
+		{"maxwell/0.5", element(b, "maxwell", set{"stiffness": 1e8, "force": 1e5, "speed": 1, "exponent": 0.5})},
+		{"maxwell/0.3", element(b, "maxwell", set{"stiffness": 1e8, "force": 1e5, "speed": 1, "exponent": 0.3})},
+		{"bilinear", element(b, "bilinear", set{"stiffness": 2e7, "yield_displacement": 0.01, "hardening": 0.1})},
+		{"friction", element(b, "friction", set{"stiffness": 1e8, "normal_force": 1e6, "slow": 0.05, "fast": 0.1})},
+		{"cubic", element(b, "cubic", set{"stiffness": 1e6, "cubic": 1e9})},
+		{"gap", element(b, "gap", set{"stiffness": 1e7, "gap": 0.01})},
+		{"mass", element(b, "mass", set{"mass": 100})},
 	} {
 		b.Run(c.name, func(b *testing.B) {
 			y, v := make([]float64, 4096), make([]float64, 4096)

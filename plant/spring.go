@@ -31,6 +31,8 @@ func (s *spring) Advance(y, _, _ float64) float64 {
 	return s.k * y
 }
 
+func (s *spring) Preview(y, _, _ float64) float64 { return s.k * y }
+
 func (s *spring) Energy() (stored, dissipated float64) { return 0.5 * s.k * s.y * s.y, 0 }
 
 func (s *spring) Stiffness() float64 { return s.k }

@@ -27,82 +27,105 @@ func (l *Loop) startEnergy() {
 // measureStructure fills in what the numerical substructure has at this
 // instant.
 func (l *Loop) measureStructure(t *gauge.EnergyTick) {
-	s, v := l.cfg.Structure, l.integrator.Centred()
+	s, v := l.cfg.Structure, l.centred
 	t.VCV = s.VCV(v)
 	t.VMV = s.VMV(v)
-	t.AMA = s.AMA(l.integrator.A())
+	t.AMA = s.AMA(l.a)
 	t.Strain = l.integrator.Strain()
 }
 
 // judge updates limits, gauges and peaks at the tick's end. Numbers of a
 // diverged tick are kept out of the gauges, so that what was found until then
 // stays readable.
-func (l *Loop) judge(injected, specimen, dissipated float64) {
+func (l *Loop) judge(t *gauge.EnergyTick) {
 	for j := range l.channels {
 		if l.limit(&l.channels[j]); l.outcome == Diverged {
 			return
 		}
 	}
+	if !l.cfg.Judge {
+		return
+	}
 	for j := range l.channels {
 		ch := &l.channels[j]
 		ch.tracking.Add(ch.target, ch.measured)
 		ch.record.Add(ch.target, ch.measured)
-		ch.peakCommand = max(ch.peakCommand, math.Abs(ch.command))
-		ch.peakVelocity = max(ch.peakVelocity, math.Abs(ch.velocity))
-		ch.peakForce = max(ch.peakForce, math.Abs(ch.force))
+		if ch.spectrum != nil {
+			ch.spectrum.Add(ch.target, ch.measured)
+		}
+		raise(&ch.peakCommand, ch.command)
+		raise(&ch.peakVelocity, ch.velocity)
+		raise(&ch.peakForce, ch.force)
 	}
-	if l.integrator == nil {
-		return
+	if l.integrator != nil {
+		l.balance(t)
 	}
-	x := l.integrator.X()
-	input := 0.0
-	for i := range x {
-		input += 0.5 * (l.externalWas[i] + l.external[i]) * (x[i] - l.xWas[i])
-	}
-	gone := l.integrator.Hysteresis()
-	t := gauge.EnergyTick{
-		Injected: injected, Specimen: specimen, Dissipated: dissipated,
-		Input: input, Hysteresis: gone - l.hyst,
-	}
-	l.hyst = gone
-	l.measureStructure(&t)
-	l.energy.Add(&t)
 }
 
-// limit trips the loop when a channel has passed one of its limits. The
-// comparisons are so written that NaN passes a limit too.
+// raise lifts a peak to |v| if that is more. The limits have kept NaN away;
+// max, which minds it, takes longer.
+func raise(peak *float64, v float64) {
+	if v = math.Abs(v); v > *peak {
+		*peak = v
+	}
+}
+
+// balance completes what the channels did in this tick and adds it to the
+// energy of the loop.
+func (l *Loop) balance(t *gauge.EnergyTick) {
+	input := 0.0
+	for i, x := range l.x {
+		input += 0.5 * (l.externalWas[i] + l.external[i]) * (x - l.xWas[i])
+	}
+	t.Input = input
+	if l.yields {
+		gone := l.integrator.Hysteresis()
+		t.Hysteresis = gone - l.hyst
+		l.hyst = gone
+	}
+	l.measureStructure(t)
+	l.energy.Add(t)
+}
+
+// limit trips the loop when a channel has passed one of its limits, or stops it
+// as diverged when a number is none or beyond all reason. The comparisons are so
+// written that NaN fails them.
 func (l *Loop) limit(c *channel) {
-	stroke := max(math.Abs(c.command), math.Abs(c.measured))
-	lag := math.Abs(c.target - c.measured)
+	stroke := math.Abs(c.command)
+	if y := math.Abs(c.measured); y > stroke || math.IsNaN(y) {
+		stroke = y
+	}
+	speed, force, lag := math.Abs(c.velocity), math.Abs(c.force), math.Abs(c.target-c.measured)
 	switch {
-	case l.outcome != Running:
 	case !(stroke < divergence):
-		l.sane(c, "command or measured displacement", stroke)
-	case !(stroke <= c.Limits.Stroke):
+		l.diverge(c, "command or measured displacement", stroke)
+	case !(force <= math.MaxFloat64):
+		l.diverge(c, "measured force", force)
+	case !(speed <= math.MaxFloat64):
+		l.diverge(c, "velocity", speed)
+	case l.outcome != Running:
+	case stroke > c.Limits.Stroke:
 		l.tripOn(c, "stroke", stroke, c.Limits.Stroke)
-	case !(math.Abs(c.velocity) <= c.Limits.Velocity):
-		l.tripOn(c, "velocity", math.Abs(c.velocity), c.Limits.Velocity)
-	case !(math.Abs(c.force) <= c.Limits.Force):
-		l.tripOn(c, "force", math.Abs(c.force), c.Limits.Force)
-	case !(lag <= c.Limits.Error):
+	case speed > c.Limits.Velocity:
+		l.tripOn(c, "velocity", speed, c.Limits.Velocity)
+	case force > c.Limits.Force:
+		l.tripOn(c, "force", force, c.Limits.Force)
+	case lag > c.Limits.Error:
 		l.tripOn(c, "error", lag, c.Limits.Error)
 	}
 }
 
-// sane stops the loop as diverged when a displacement is beyond anything that
-// a test can mean, or no number at all.
-func (l *Loop) sane(c *channel, what string, v float64) bool {
-	if math.Abs(v) < divergence {
-		return true
+// diverge stops the loop: a value is beyond anything that a test can mean, or
+// no number at all. c is nil where no channel is to blame.
+func (l *Loop) diverge(c *channel, what string, v float64) {
+	l.trip = &Trip{Limit: what, Value: Figure(v), Allowed: divergence, Time: l.Time()}
+	if c != nil {
+		l.trip.Channel = c.Name
 	}
-	l.tripOn(c, what, v, divergence)
 	l.outcome = Diverged
-	return false
 }
 
 func (l *Loop) tripOn(c *channel, limit string, value, allowed float64) {
-	c.tripped.Limit = limit
-	c.tripped.Value, c.tripped.Allowed = Figure(value), Figure(allowed)
-	c.tripped.Time = l.Time()
-	l.trip, l.outcome = c.tripped, Tripped
+	l.trip = &Trip{limit, c.Name, Figure(value), Figure(allowed), l.Time()}
+	l.outcome = Tripped
 }

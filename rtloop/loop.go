@@ -13,12 +13,14 @@ package rtloop
 import (
 	"fmt"
 	"math"
+	"strconv"
 
 	"antelag/compensator"
 	"antelag/plant"
 	"antelag/rtloop/excitation"
 	"antelag/rtloop/gauge"
 	"antelag/rtloop/substructure"
+	"antelag/scenarios/kind"
 )
 
 // Channel is one actuator with its specimen, sensors, compensator and limits,
@@ -57,12 +59,14 @@ type Config struct {
 	// channels, in the same order; nil when the excitation drives the target.
 	Structure  *substructure.Structure
 	Integrator string
-	Initial    []float64 // displacements held before t = 0, m; nil: zero
+	Method     kind.Values // settings of the integrator; those not given have their defaults
+	Initial    []float64   // displacements held before t = 0, m; nil: zero
 
 	Channels []Channel
 	Window   float64 // trailing window of energy and subspace, model seconds
 	Ticks    int64   // expected length, to size the kept record
-	Judge    bool    // keep gauges; the reference response needs none
+	Spectra  bool    // compare response spectra of measured and target
+	Judge    bool    // keep gauges; the reference response needs none. Limits hold always
 }
 
 // Drive is one sample of the excitation: its value, and for a driven target
@@ -109,12 +113,15 @@ type Loop struct {
 
 	channels   []channel
 	integrator substructure.Integrator // nil when the target is driven
-	load       []float64               // p at t_k: external minus specimen forces
-	external   []float64               // external load at t_k
+	x, v, a    []float64               // views of its state: asked for once, not every tick
+	centred    []float64
+	load       []float64 // p at t_k: external minus specimen forces
+	external   []float64 // external load at t_k
 	externalWas,
 	xWas []float64
 
 	energy *gauge.Energy // nil without a structure
+	yields bool          // the structure has hysteretic storeys
 	hyst   float64       // dissipated by hysteretic storeys so far
 	drive  float64       // excitation at t_k
 	ticks  int64         // ticks done
@@ -126,14 +133,15 @@ type Loop struct {
 // channel is the running state of a Channel.
 type channel struct {
 	Channel
+	in                               Drive   // target of this tick and its derivatives, physical
 	target, command, measured, force float64 // of this tick's end
 	velocity                         float64 // of the actuator
 	dissipated                       float64
 	tracking                         *gauge.Tracking
 	record                           *gauge.Record
+	spectrum                         *gauge.Spectrum // nil unless asked for
 	peakCommand, peakVelocity        float64
 	peakForce                        float64
-	tripped                          *Trip // room for the trip, so that tripping allocates nothing
 }
 
 // NewLoop builds a loop. It is not started.
@@ -146,9 +154,11 @@ func NewLoop(cfg Config) (*Loop, error) {
 	if cfg.Structure != nil {
 		n := cfg.Structure.N()
 		var err error
-		if l.integrator, err = substructure.New(cfg.Integrator, cfg.Structure, l.dt); err != nil {
+		if l.integrator, err = substructure.NewWith(cfg.Integrator, cfg.Structure, l.dt, cfg.Method); err != nil {
 			return nil, fmt.Errorf("integrator: %w", err)
 		}
+		l.x, l.v, l.a, l.centred = l.integrator.X(), l.integrator.V(), l.integrator.A(), l.integrator.Centred()
+		l.yields = cfg.Structure.Yields()
 		l.load, l.external = make([]float64, n), make([]float64, n)
 		l.externalWas, l.xWas = make([]float64, n), make([]float64, n)
 		if cfg.Judge {
@@ -156,10 +166,14 @@ func NewLoop(cfg Config) (*Loop, error) {
 		}
 	}
 	for _, c := range cfg.Channels {
-		ch := channel{Channel: c, tripped: &Trip{Channel: c.Name}}
+		ch := channel{Channel: c}
 		if cfg.Judge {
 			ch.tracking = gauge.NewTracking(window)
-			ch.record = gauge.NewRecord(cfg.Tick, int(min(cfg.Ticks+1, math.MaxInt32)))
+			ch.record = gauge.NewRecord(cfg.Tick, int(min(cfg.Ticks, math.MaxInt32)))
+			ch.record.Response = cfg.Structure == nil
+			if cfg.Spectra {
+				ch.spectrum = gauge.NewSpectrum(cfg.Tick)
+			}
 		}
 		l.channels = append(l.channels, ch)
 	}
@@ -176,23 +190,11 @@ func (l *Loop) Start(first Drive) {
 		x0 = make([]float64, l.cfg.Structure.N())
 	}
 	for j := range l.channels {
-		ch := &l.channels[j]
 		x := first.X
 		if l.integrator != nil {
 			x = l.cfg.Structure.Project(x0, j)
 		}
-		ch.Actuator.Start(x, ch.Specimen)
-		ch.Compensator.Start(x)
-		ch.Displacement.Start(x)
-		ch.Force.Start(ch.Specimen.Force())
-		ch.target, ch.command, ch.velocity = x, x, 0
-		ch.measured, ch.force = ch.Displacement.Read(x), ch.Force.Read(ch.Specimen.Force())
-		_, ch.dissipated = ch.Specimen.Energy()
-		ch.peakCommand, ch.peakVelocity, ch.peakForce = math.Abs(x), 0, math.Abs(ch.force)
-		if l.cfg.Judge {
-			ch.tracking.Start(ch.target, ch.measured)
-			ch.record.Start(ch.target, ch.measured)
-		}
+		l.channels[j].start(x)
 	}
 	if l.integrator != nil {
 		l.setLoad()
@@ -201,64 +203,103 @@ func (l *Loop) Start(first Drive) {
 	}
 }
 
+// start puts a channel at rest under the target x: commanded what the
+// compensator asks for there, and standing where the actuator then stands.
+func (c *channel) start(x float64) {
+	c.Compensator.Start(x, x)
+	c.target, c.command, c.velocity = x, c.Compensator.Command(compensator.Input{X: x, Y: x}), 0
+	y := c.Actuator.Start(c.command, c.Specimen)
+	c.Displacement.Start(y)
+	c.Force.Start(c.Specimen.Force())
+	c.measured, c.force = c.Displacement.Read(y), c.Force.Read(c.Specimen.Force())
+	c.Compensator.Start(x, c.measured)
+	_, c.dissipated = c.Specimen.Energy()
+	c.peakCommand, c.peakVelocity, c.peakForce = math.Abs(c.command), 0, math.Abs(c.force)
+	if c.tracking != nil {
+		c.tracking.Start(c.target, c.measured)
+		c.record.Start(c.target, c.measured)
+	}
+	if c.spectrum != nil {
+		c.spectrum.Start(c.target, c.measured)
+	}
+}
+
 // Tick carries the loop from t_k to t_{k+1}; d is the excitation at t_{k+1}.
-// It reports whether the loop still runs. It allocates nothing.
+// It reports whether the loop still runs. It allocates nothing, but for the
+// report of its end.
 func (l *Loop) Tick(d Drive) bool {
 	if l.outcome != Running {
 		return false
 	}
-	if l.integrator != nil {
-		copy(l.xWas, l.integrator.X())
-		l.integrator.Predict()
-	}
 	l.drive = d.X
 	l.ticks++
-	var injected, specimen, dissipated float64
+	if l.integrator != nil {
+		copy(l.xWas, l.x)
+		l.integrator.Predict()
+	}
+	if !l.aim(d) {
+		return false
+	}
+	var t gauge.EnergyTick
 	for j := range l.channels {
-		ch := &l.channels[j]
-		in := compensator.Input{X: d.X, V: d.V, A: d.A, Y: ch.measured, R: ch.force}
-		if l.integrator != nil {
-			s := l.cfg.Structure
-			in.X = s.Project(l.integrator.X(), j)
-			in.V = s.Project(l.integrator.V(), j)
-			in.A = s.Project(l.integrator.A(), j)
-		}
-		in.V *= l.velocity
-		in.A *= l.accelerate
-		if !l.sane(ch, "target", in.X) {
-			return false
-		}
-		xWas, yWas, rWas := ch.target, ch.measured, ch.force
-		ch.advance(in)
-		// Work by the trapezoid rule. It is the force that goes back into the
-		// structure that works on the target, so that the balance closes.
-		r := 0.5 * (rWas + ch.force)
-		dy := ch.measured - yWas
-		injected += r * (dy - (ch.target - xWas))
-		specimen += r * dy
-		_, gone := ch.Specimen.Energy()
-		dissipated += gone - ch.dissipated
-		ch.dissipated = gone
+		l.channels[j].advance(&t)
 	}
 	if l.integrator != nil {
 		copy(l.externalWas, l.external)
 		l.setLoad()
 		l.integrator.Correct(l.load)
 	}
-	if l.cfg.Judge {
-		l.judge(injected, specimen, dissipated)
-	}
+	l.judge(&t)
 	return l.outcome == Running
 }
 
-// advance takes one channel through compensate, act and sense.
-func (c *channel) advance(in compensator.Input) {
-	c.target = in.X
-	c.command = c.Compensator.Command(in)
+// aim works out what every channel is to do, and stops the loop before any
+// actuator moves if that is beyond all reason.
+func (l *Loop) aim(d Drive) bool {
+	for i, x := range l.x {
+		if !(math.Abs(x) < divergence) {
+			l.diverge(nil, "displacement of level "+strconv.Itoa(i+1), x)
+			return false
+		}
+	}
+	for j := range l.channels {
+		ch := &l.channels[j]
+		x, v, a := d.X, d.V, d.A
+		if l.integrator != nil {
+			s := l.cfg.Structure
+			x, v, a = s.Project(l.x, j), s.Project(l.v, j), s.Project(l.a, j)
+		}
+		if !(math.Abs(x) < divergence) {
+			l.diverge(ch, "target", x)
+			return false
+		}
+		ch.in = Drive{x, v * l.velocity, a * l.accelerate}
+	}
+	return true
+}
+
+// advance takes one channel through compensate, act and sense, and adds its
+// work by the trapezoid rule. It is the force that goes back into the structure
+// that works on the target, so that the balance closes.
+func (c *channel) advance(t *gauge.EnergyTick) {
+	xWas, yWas, rWas := c.target, c.measured, c.force
+	c.target = c.in.X
+	// The input is put together where it is handed over: one that is kept, and
+	// so copied just after it was written, stalls the tick for a tenth of its
+	// time (stores of 8 bytes, loads of 16).
+	c.command = c.Compensator.Command(compensator.Input{X: c.in.X, V: c.in.V, A: c.in.A, Y: yWas, R: rWas})
 	y, v := c.Actuator.Advance(c.command, c.Specimen)
 	c.velocity = v
 	c.measured = c.Displacement.Read(y)
 	c.force = c.Force.Read(c.Specimen.Force())
+
+	r := 0.5 * (rWas + c.force)
+	dy := c.measured - yWas
+	t.Injected += r * (dy - (c.target - xWas))
+	t.Specimen += r * dy
+	_, gone := c.Specimen.Energy()
+	t.Dissipated += gone - c.dissipated
+	c.dissipated = gone
 }
 
 // setLoad assembles p from the excitation and the measured forces.

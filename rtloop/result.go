@@ -50,6 +50,18 @@ type ChannelResult struct {
 	PeakVelocity      Figure            `json:"peak_velocity_m_s"`
 	PeakForce         Figure            `json:"peak_force_N"`
 	Coefficients      map[string]Figure `json:"coefficients"`
+	// Of a driven target: how measured answers target by thirds of an octave.
+	Response []BandResult `json:"response,omitempty"`
+	// Where it was asked for: rms over periods of the measured response
+	// spectrum over the target's, less 1, at 5 % damping.
+	SpectrumError Figure `json:"spectrum_error"`
+}
+
+// BandResult is the response in one band.
+type BandResult struct {
+	Frequency Figure `json:"frequency_hz"`
+	Amplitude Figure `json:"amplitude"`
+	Delay     Figure `json:"delay_s"`
 }
 
 // FEIResult is the frequency evaluation index.
@@ -95,7 +107,13 @@ func (c *channel) result() ChannelResult {
 		FEI:               FEIResult{Figure(align.FEI.Amplitude), Figure(align.FEI.Delay), Figure(align.FEI.Frequency)},
 		TrackingIndicator: Figure(t.Indicator()), PeakTarget: Figure(t.PeakTarget()),
 		PeakCommand: Figure(c.peakCommand), PeakVelocity: Figure(c.peakVelocity), PeakForce: Figure(c.peakForce),
-		Coefficients: map[string]Figure{},
+		Coefficients: map[string]Figure{}, SpectrumError: Figure(math.NaN()),
+	}
+	for _, b := range align.Bands {
+		res.Response = append(res.Response, BandResult{Figure(b.Frequency), Figure(b.Amplitude), Figure(b.Delay)})
+	}
+	if c.spectrum != nil {
+		res.SpectrumError = Figure(c.spectrum.Error())
 	}
 	for _, k := range c.Compensator.Coefficients(nil) {
 		res.Coefficients[k.Name] = Figure(k.Value)

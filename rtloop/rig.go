@@ -2,6 +2,7 @@ package rtloop
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 	"sync"
@@ -35,6 +36,7 @@ type Rig struct {
 	Step      float64 // model seconds a tick
 
 	drive driver
+	ran   bool
 }
 
 // blockTicks is how many ticks go through the pipeline at once: long enough
@@ -51,8 +53,12 @@ type block struct {
 // Run carries all lanes to the end of the motion, or until none runs any
 // more, or ctx ends; then the lanes that still ran are interrupted. progress,
 // which may be nil, is told the ticks done. The error is a lane's Observe
-// error, if any.
+// error, if any. A motion plays once, so a Rig runs once.
 func (r *Rig) Run(ctx context.Context, progress func(done int64)) error {
+	if r.ran {
+		return errors.New("this rig has run; build it anew to run again")
+	}
+	r.ran = true
 	r.start()
 	full, free := make(chan *block, 2), make(chan *block, 3)
 	for range cap(free) {
@@ -168,10 +174,10 @@ func (l *Lane) run(b *block) bool {
 	return l.Loop.outcome == Running
 }
 
-// compare adds this tick to the response error. A reference that failed makes
-// it undefined.
+// compare adds this tick to the response error, unless it diverged. A reference
+// that failed makes it undefined.
 func (l *Lane) compare(b *block, i int) {
-	if b.reference == nil {
+	if b.reference == nil || l.Loop.outcome == Diverged {
 		return
 	}
 	if !b.ok[i] {
@@ -199,15 +205,14 @@ func (l *Lane) observe() {
 	}
 }
 
-// settle decides the outcomes at the end of a run.
+// settle decides the outcomes at the end of a run and returns the first
+// observer's error.
 func (r *Rig) settle() error {
-	for _, l := range r.Lanes {
-		if l.err != nil {
-			return fmt.Errorf("lane %s: %w", l.Name, l.err)
-		}
-	}
+	var failed error
 	for _, l := range r.Lanes {
 		switch {
+		case l.err != nil && failed == nil:
+			failed = fmt.Errorf("lane %s: %w", l.Name, l.err)
 		case l.Loop.outcome != Running:
 		case l.Loop.ticks == r.Ticks:
 			l.Loop.outcome = Completed
@@ -215,7 +220,7 @@ func (r *Rig) settle() error {
 			l.Loop.outcome = Interrupted
 		}
 	}
-	return nil
+	return failed
 }
 
 // Results gathers the figures of all lanes at the end of a run.

@@ -162,13 +162,24 @@ func TestDivergence(t *testing.T) {
 	}
 	t.Run("no number", func(t *testing.T) {
 		l := standardLoop(t, "none", ticks)
-		l.channels[0].Compensator = &nan{l.channels[0].Compensator, 100}
+		l.channels[0].Compensator = &nan{l.channels[0].Compensator, 101} // the first is asked for at the start
 		r := run(l)
 		if r.Outcome != Diverged || r.Trip == nil || l.Ticks() != 101 {
 			t.Fatalf("%v after %d ticks: %+v", r.Outcome, l.Ticks(), r.Trip)
 		}
 		if !r.Channels[0].NRMSE.Defined() || !r.Channels[0].PeakCommand.Defined() {
 			t.Errorf("what was found before is lost: %+v", r.Channels[0])
+		}
+	})
+	t.Run("a level that no channel touches", func(t *testing.T) {
+		// Two storeys at a step far beyond the stable one of explicit Newmark;
+		// the channel pushes the lower, stiff one between two ticks only.
+		s := mustStoreys(t, []substructure.Storey{{Mass: 1e3, Stiffness: 1e9}, {Mass: 1, Stiffness: 1e9}}, []substructure.Attachment{{From: 0, To: 1, Stiffness: 0}})
+		l := mustLoop(t, Config{Tick: 0.01, Slowdown: 1, Structure: s, Integrator: "newmark-explicit", Window: 1, Judge: true,
+			Channels: []Channel{perfectChannel(t, 0.01)}})
+		r := run(l)
+		if r.Outcome != Diverged || r.Trip.Channel != "" || !strings.HasPrefix(r.Trip.Limit, "displacement of level") {
+			t.Fatalf("%v: %+v", r.Outcome, r.Trip)
 		}
 	})
 	t.Run("unstable", func(t *testing.T) {
@@ -193,6 +204,9 @@ func TestInterruptAndObserveError(t *testing.T) {
 	if o := r.Lanes[0].Loop.Outcome(); o != Interrupted || r.Lanes[0].Loop.Ticks() == 0 {
 		t.Errorf("outcome %v after %d ticks", o, r.Lanes[0].Loop.Ticks())
 	}
+	if err := r.Run(context.Background(), nil); err == nil {
+		t.Error("a rig ran twice")
+	}
 	full := errors.New("no space left")
 	r = rig()
 	r.Lanes[1].Observe = func(l *Loop) error {
@@ -204,6 +218,9 @@ func TestInterruptAndObserveError(t *testing.T) {
 	err := r.Run(context.Background(), nil)
 	if !errors.Is(err, full) || !strings.Contains(err.Error(), "lane y") {
 		t.Errorf("got %v", err)
+	}
+	if o := r.Lanes[0].Loop.Outcome(); o != Interrupted && o != Completed {
+		t.Errorf("the other lane is left %v", o)
 	}
 }
 

@@ -15,6 +15,7 @@ import (
 	"antelag/rtloop/excitation"
 	"antelag/rtloop/substructure"
 	"antelag/scenarios/kind"
+	"antelag/scenarios/quantity"
 )
 
 // targetWindow is the trailing window of a tracking test, which has no first
@@ -48,6 +49,9 @@ func (s *Scenario) Build() (*rtloop.Rig, error) {
 		}
 	}
 	b.window = b.energyWindow()
+	if err := errors.Join(b.checkStep(), b.checkMemory()); err != nil {
+		return nil, err
+	}
 	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
 	if rig.Reference, err = b.reference(); err != nil {
 		return nil, err
@@ -78,7 +82,7 @@ func (b *builder) motion() (excitation.Source, error) {
 	}
 	return entry.New(excitation.Context{
 		Step: b.step(), Duration: b.s.Loop.Num("duration"), Seed: uint64(b.s.Loop.Num("seed")),
-		Drives: e.Drives, Open: b.s.files,
+		Drives: e.Drives, Open: b.s.open,
 	}, e.Part.Values)
 }
 
@@ -138,22 +142,11 @@ func symmetric(v kind.Values, name string) (*mat.SymDense, error) {
 	if !v.Has(name) {
 		return nil, nil
 	}
-	m := v[name]
-	n := m.Rows
-	if len(m.List) != n*n {
-		return nil, fmt.Errorf("%s has %d rows of %d values; it must be square", name, n, len(m.List)/n)
+	m, err := substructure.Symmetric(v[name].Rows, v[name].List)
+	if err != nil {
+		return nil, fmt.Errorf("%s: %w", name, err)
 	}
-	out := mat.NewSymDense(n, nil)
-	for i := range n {
-		for j := i; j < n; j++ {
-			a, b := m.List[i*n+j], m.List[j*n+i]
-			if math.Abs(a-b) > 1e-9*max(math.Abs(a), math.Abs(b)) {
-				return nil, fmt.Errorf("%s is not symmetric: row %d, column %d is %g, row %d, column %d is %g", name, i+1, j+1, a, j+1, i+1, b)
-			}
-			out.SetSym(i, j, a)
-		}
-	}
-	return out, nil
+	return m, nil
 }
 
 // release sets the initial displacements when the motion is a release.
@@ -166,21 +159,83 @@ func (b *builder) release(motion excitation.Source) error {
 	if level == 0 {
 		level = b.structure.N()
 	}
+	var specimens []*plant.Specimen
+	for j := range b.s.Channels {
+		s, err := b.specimen(j)
+		if err != nil {
+			return err
+		}
+		specimens = append(specimens, s)
+	}
 	var err error
-	b.initial, err = b.structure.Static(level, x)
+	b.initial, err = b.structure.Held(level, x, func(j int, extension float64) float64 {
+		specimens[j].Start(extension)
+		return specimens[j].Force()
+	})
 	return err
 }
 
 // energyWindow is five periods of the first mode unless the scenario says.
 func (b *builder) energyWindow() float64 {
-	if b.s.Loop.Has("energy_window") {
-		return b.s.Loop.Num("energy_window")
-	}
 	window := targetWindow
-	if b.structure != nil {
+	switch {
+	case b.s.Loop.Has("energy_window"):
+		window = b.s.Loop.Num("energy_window")
+	case b.structure != nil:
 		window = 5 * 2 * math.Pi / b.structure.Frequencies()[0]
 	}
 	return min(window, b.s.Loop.Num("duration"))
+}
+
+// What the gauges keep, bytes: a tick of every lane's channel in the record (up
+// to two segments of 2²⁰) and in the window of its subspace, a tick of every lane
+// in the window of its energy.
+const (
+	bytesPerTick  = 16
+	recordTicks   = 1 << 20
+	windowBytes   = 32
+	largestMemory = 8 << 30
+)
+
+// checkMemory refuses a test whose gauges would not fit into the memory of a
+// common machine, before anything is allocated.
+func (b *builder) checkMemory() error {
+	lanes, channels := float64(1+len(b.s.Lanes)), float64(len(b.s.Channels))
+	record := min(float64(b.ticks), 2*recordTicks) * bytesPerTick
+	window := b.window / b.step() * windowBytes
+	total := lanes * (channels*(record+window) + window)
+	if total > largestMemory {
+		return b.s.doc.errorAt("loop", fmt.Errorf("%g lanes of %g channels with %.3g ticks in the energy window would keep %.3g GB of ticks; at most %.3g GB (a shorter energy_window or fewer lanes need less)",
+			lanes, channels, b.window/b.step(), total/1e9, float64(largestMemory)/1e9))
+	}
+	return nil
+}
+
+// checkStep refuses a step at which the integrator is unstable whatever the
+// actuator does: explicit Newmark from 2/ω_max on.
+func (b *builder) checkStep() error {
+	if b.structure == nil || b.s.Substructure.Values.Text("integrator") != "newmark-explicit" {
+		return nil
+	}
+	f := b.structure.Frequencies()
+	fastest := f[len(f)-1]
+	if limit := 2 / fastest; b.step() >= limit {
+		return b.s.doc.errorAt("loop.rate", fmt.Errorf("the model step of %s is not below %s, where newmark-explicit becomes unstable with the highest mode at %s; raise the rate or use CR",
+			quantity.Short(b.step(), quantity.Time), quantity.Short(limit, quantity.Time), quantity.Short(fastest/(2*math.Pi), quantity.Frequency)))
+	}
+	return nil
+}
+
+// integrator returns the integrator's name and those settings of the section
+// that are its own.
+func (s *Substructure) integrator() (string, kind.Values) {
+	own := kind.Values{}
+	for name, v := range s.Values {
+		if !substructureSection.Has(name) {
+			own[name] = v
+		}
+	}
+	return s.Values.Text("integrator"), own
 }
 
 func (b *builder) config(channels []rtloop.Channel) rtloop.Config {
@@ -190,10 +245,11 @@ func (b *builder) config(channels []rtloop.Channel) rtloop.Config {
 	}
 	cfg := rtloop.Config{
 		Tick: b.tick(), Slowdown: b.s.Loop.Num("slowdown"), Drives: b.s.Excitation.Drives, Level: level,
-		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks, Judge: true,
+		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks,
+		Spectra: b.s.Accept.Has("spectrum_error"), Judge: true,
 	}
 	if b.s.Substructure != nil {
-		cfg.Integrator = b.s.Substructure.Values.Text("integrator")
+		cfg.Integrator, cfg.Method = b.s.Substructure.integrator()
 	}
 	return cfg
 }
@@ -211,7 +267,7 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 		if err != nil {
 			return nil, err
 		}
-		c, err := perfect(b.step())
+		c, err := perfect(b.step(), b.tick())
 		if err != nil {
 			return nil, err
 		}
@@ -223,8 +279,9 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 	return rtloop.NewLoop(cfg)
 }
 
-// perfect is a channel whose actuator does at once what it is told.
-func perfect(tick float64) (rtloop.Channel, error) {
+// perfect is a channel whose actuator does at once what it is told. Without a
+// compensator to speak of, the latter's tick does not matter.
+func perfect(tick, physical float64) (rtloop.Channel, error) {
 	actuator, err := buildPart(&plant.Actuators, "lag-delay", nil)
 	if err != nil {
 		return rtloop.Channel{}, err
@@ -237,7 +294,7 @@ func perfect(tick float64) (rtloop.Channel, error) {
 	if err != nil {
 		return rtloop.Channel{}, err
 	}
-	c.Compensator, err = none.New(tick, none.values)
+	c.Compensator, err = none.New(physical, none.values)
 	return c, err
 }
 

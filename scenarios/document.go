@@ -41,7 +41,7 @@ const maxFile = 1 << 20
 // parse reads TOML text. Syntax errors carry file and line.
 func parse(file string, text []byte) (*document, error) {
 	if len(text) > maxFile {
-		return nil, &Error{Where: file, Err: fmt.Errorf("is %d bytes long; a scenario has at most %d", len(text), maxFile)}
+		return nil, &Error{Where: file, Err: fmt.Errorf("is longer than %d bytes, which is more than a scenario has", maxFile)}
 	}
 	d := &document{file: file, where: map[string]string{}}
 	if err := toml.Unmarshal(text, &d.tree); err != nil {
@@ -160,7 +160,6 @@ func parent(path string) string {
 // errorAt makes an Error for a path: at its line, or at that of the nearest
 // table around it. Indexes are left out of the key: the line says which.
 func (d *document) errorAt(path string, err error) error {
-	key := path
 	where := d.file
 	for p := path; p != ""; p = parent(p) {
 		if w, ok := d.where[p]; ok {
@@ -168,17 +167,5 @@ func (d *document) errorAt(path string, err error) error {
 			break
 		}
 	}
-	var plain strings.Builder
-	skip := false
-	for _, r := range key {
-		switch {
-		case r == '[':
-			skip = true
-		case r == ']':
-			skip = false
-		case !skip:
-			plain.WriteRune(r)
-		}
-	}
-	return &Error{Where: where, Key: plain.String(), Err: err}
+	return &Error{Where: where, Key: plainPath(path), Err: err}
 }

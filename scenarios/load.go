@@ -8,19 +8,35 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 
 	"antelag/scenarios/kind"
 )
 
-//go:embed *.toml
+//go:embed *.toml *.txt
 var shipped embed.FS
 
 // Default is the embedded scenario that runs when none is named.
 const Default = "archive"
 
-// opener opens a data file that a scenario names.
-type opener func(name string) (io.ReadCloser, error)
+// embedded marks the name of a data file that ships with the program.
+const embedded = "embedded:"
+
+// path returns where a data file that the scenario names lies.
+func (s *Scenario) path(name string) string {
+	if filepath.IsAbs(name) || strings.HasPrefix(name, embedded) {
+		return name
+	}
+	return filepath.Join(s.dir, name)
+}
+
+func (s *Scenario) open(name string) (io.ReadCloser, error) {
+	if inside, ok := strings.CutPrefix(name, embedded); ok {
+		return shipped.Open(inside)
+	}
+	return os.Open(s.path(name))
+}
 
 // Names lists the embedded scenarios.
 func Names() []string {
@@ -31,6 +47,7 @@ func Names() []string {
 	for i := range files {
 		files[i] = strings.TrimSuffix(files[i], ".toml")
 	}
+	slices.Sort(files)
 	return files
 }
 
@@ -47,7 +64,7 @@ func Text(name string) ([]byte, error) {
 // scenario of that name, with the changes applied. Errors are *Error where
 // they concern the text.
 func Load(name string, changes ...Change) (*Scenario, error) {
-	text, err := os.ReadFile(name)
+	text, err := readFile(name)
 	switch {
 	case err == nil:
 		return Parse(name, text, filepath.Dir(name), changes...)
@@ -62,6 +79,16 @@ func Load(name string, changes ...Change) (*Scenario, error) {
 	return Parse(name, text, ".", changes...)
 }
 
+// readFile reads a scenario file, but no more of it than shows that it is none.
+func readFile(name string) ([]byte, error) {
+	f, err := os.Open(name)
+	if err != nil {
+		return nil, err
+	}
+	defer f.Close()
+	return io.ReadAll(io.LimitReader(f, maxFile+1))
+}
+
 // Parse reads a scenario from text. file names it in errors; files that it
 // names are looked for in dir.
 func Parse(file string, text []byte, dir string, changes ...Change) (*Scenario, error) {
@@ -69,28 +96,22 @@ func Parse(file string, text []byte, dir string, changes ...Change) (*Scenario, 
 	if err != nil {
 		return nil, err
 	}
-	open := func(name string) (io.ReadCloser, error) {
-		if !filepath.IsAbs(name) {
-			name = filepath.Join(dir, name)
-		}
-		return os.Open(name)
-	}
-	return resolve(doc, open, changes)
+	return resolve(doc, dir, changes)
 }
 
 // With returns the scenario with some settings changed, checked again as a
 // whole. The receiver stays as it is.
 func (s *Scenario) With(changes ...Change) (*Scenario, error) {
-	return resolve(s.doc.clone(), s.files, changes)
+	return resolve(s.doc.clone(), s.dir, changes)
 }
 
-func resolve(doc *document, open opener, changes []Change) (*Scenario, error) {
+func resolve(doc *document, dir string, changes []Change) (*Scenario, error) {
 	for _, c := range changes {
 		if err := doc.apply(c); err != nil {
 			return nil, err
 		}
 	}
-	return read(doc, open)
+	return read(doc, dir)
 }
 
 // clone copies a document, so that changes to one do not show in the other.

@@ -18,18 +18,19 @@ import (
 type Chapter struct {
 	Title  string
 	Header string // how a scenario opens a part of this sort
+	Key    string // the key that names the kind
 	Kinds  []*kind.Kind
 }
 
 // Chapters lists everything that a scenario can hold, from the tables.
 func Chapters() []Chapter {
 	return []Chapter{
-		{"compensators", "[channel.compensator]", compensator.Kinds.Kinds()},
-		{"actuators", "[channel.actuator]", plant.Actuators.Kinds()},
-		{"specimens", "[[channel.specimen]]", plant.Elements.Kinds()},
-		{"excitations", "[excitation]", excitation.Kinds.Kinds()},
-		{"integrators", "", substructure.Integrators.Kinds()},
-		{"sections", "", Sections()},
+		{"compensators", "[channel.compensator]", "kind", compensator.Kinds.Kinds()},
+		{"actuators", "[channel.actuator]", "kind", plant.Actuators.Kinds()},
+		{"specimens", "[[channel.specimen]]", "kind", plant.Elements.Kinds()},
+		{"excitations", "[excitation]", "kind", excitation.Kinds.Kinds()},
+		{"integrators", "[substructure]", "integrator", substructure.Integrators.Kinds()},
+		{"sections", "", "", Sections()},
 	}
 }
 
@@ -82,10 +83,17 @@ func writeKind(out *strings.Builder, c Chapter, k *kind.Kind) {
 	if k.Source != "" {
 		fmt.Fprintf(out, "  source    %s\n", k.Source)
 	}
-	if len(k.Settings) == 0 {
-		out.WriteString("  no settings\n\n")
-		return
+	if len(k.Settings) > 0 {
+		writeSettings(out, k)
 	}
+	out.WriteString("\n")
+	if c.Header != "" {
+		out.WriteString(c.Example(k))
+		out.WriteString("\n")
+	}
+}
+
+func writeSettings(out *strings.Builder, k *kind.Kind) {
 	out.WriteString("\n")
 	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
 	fmt.Fprintf(t, "  setting\tdefault\tallowed\tmeaning\n")
@@ -94,11 +102,6 @@ func writeKind(out *strings.Builder, c Chapter, k *kind.Kind) {
 		fmt.Fprintf(t, "  %s\t%s\t%s\t%s\n", s.Name, defaultText(s), s.Allowed(), s.Doc)
 	}
 	t.Flush() //nolint:errcheck // a Builder does not fail
-	out.WriteString("\n")
-	if c.Header != "" {
-		out.WriteString(Example(c.Header, k))
-		out.WriteString("\n")
-	}
 }
 
 func defaultText(s *kind.Setting) string {
@@ -113,9 +116,9 @@ func defaultText(s *kind.Setting) string {
 
 // Example writes a block of a scenario that uses the kind: its defaults, and
 // for what has none a value in the middle of the sensible range.
-func Example(header string, k *kind.Kind) string {
+func (c Chapter) Example(k *kind.Kind) string {
 	var out strings.Builder
-	fmt.Fprintf(&out, "%s\nkind = %s\n", header, quote(k.Name))
+	fmt.Fprintf(&out, "%s\n%s = %s\n", c.Header, c.Key, quote(k.Name))
 	for i := range k.Settings {
 		s := &k.Settings[i]
 		if value, ok := s.ExampleValue(); ok {

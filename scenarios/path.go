@@ -76,6 +76,9 @@ func (d *document) apply(c Change) error {
 		// The settings of another kind mean nothing to this one; what an
 		// excitation drives is no setting of its kind.
 		maps.DeleteFunc(at, func(k string, _ any) bool { return k != "drives" })
+		if spread, ok := d.tree["spread"].(map[string]any); ok {
+			maps.DeleteFunc(spread, func(p string, _ any) bool { return strings.HasPrefix(p, strings.TrimSuffix(c.Path, "kind")) })
+		}
 	}
 	at[key] = parseValue(c.Value)
 	d.where[path] = where
@@ -209,7 +212,7 @@ func (s *Scenario) section(steps []string) (*kind.Kind, kind.Values, error) {
 
 func (s *Substructure) section(rest []string) (*kind.Kind, kind.Values, error) {
 	if len(rest) == 0 {
-		return &substructureSection, s.Values, nil
+		return s.Kind, s.Values, nil
 	}
 	name, index, err := splitStep(rest[0])
 	switch {

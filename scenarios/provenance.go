@@ -2,6 +2,8 @@ package scenarios
 
 import (
 	"fmt"
+	"maps"
+	"path/filepath"
 	"slices"
 	"strings"
 	"time"
@@ -28,7 +30,16 @@ func (s *Scenario) CheckLane(name string) error {
 // reads as a scenario again, with version, lane and start.
 func (s *Scenario) Provenance(version, lane string, start time.Time) string {
 	var out strings.Builder
-	s.WriteTo(&out) //nolint:errcheck // a Builder does not fail
+	here := *s
+	here.Excitation.Part.Values = maps.Clone(s.Excitation.Part.Values)
+	if file, ok := here.Excitation.Part.Values["file"]; ok && !strings.HasPrefix(file.Text, embedded) {
+		// The log may lie elsewhere than the scenario: a relative name would
+		// lead nowhere from there.
+		if full, err := filepath.Abs(s.path(file.Text)); err == nil {
+			here.Excitation.Part.Values["file"] = kind.Text(full)
+		}
+	}
+	here.WriteTo(&out) //nolint:errcheck // a Builder does not fail
 	fmt.Fprintf(&out, "\n[provenance]\nversion = %s\nscenario = %s\nlane = %s\nstart = %s\n",
 		quote(version), quote(s.Name), quote(lane), start.UTC().Format(time.RFC3339))
 	return out.String()

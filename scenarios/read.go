@@ -32,9 +32,9 @@ func (r *reader) fail(path string, err error) {
 func (r *reader) failf(path, format string, args ...any) { r.fail(path, fmt.Errorf(format, args...)) }
 
 // read checks a document against the schema.
-func read(doc *document, files opener) (*Scenario, error) {
+func read(doc *document, dir string) (*Scenario, error) {
 	r := &reader{doc: doc}
-	s := &Scenario{Name: doc.file, doc: doc, files: files}
+	s := &Scenario{Name: doc.file, doc: doc, dir: dir}
 	root := doc.tree
 	r.known(root, "", "title", "loop", "substructure", "excitation", "channel", "lane", "accept", "spread", "provenance")
 	s.Title = r.text(root, "title", "title", "untitled")
@@ -46,6 +46,7 @@ func read(doc *document, files opener) (*Scenario, error) {
 	s.Accept = r.section(&acceptSection, r.table(root, "accept", "accept", false), "accept", quantity.None)
 	if r.err == nil {
 		r.levels(s)
+		r.idle(s)
 	}
 	if r.err == nil {
 		s.Spread = r.spread(s, r.table(root, "spread", "spread", false))
@@ -304,7 +305,12 @@ func (r *reader) substructure(root map[string]any, drives excitation.Drives) *Su
 		}
 		return nil
 	}
-	s := &Substructure{Values: r.section(&substructureSection, t, "substructure", quantity.None, "storey")}
+	name := r.text(t, "integrator", "substructure.integrator", defaultIntegrator)
+	if _, err := substructure.Integrators.Find(name); err != nil {
+		r.fail("substructure.integrator", err)
+	}
+	k := substructureKind(name)
+	s := &Substructure{Part: Part{k, r.section(k, t, "substructure", quantity.None, "storey")}}
 	for i, storey := range r.tables(t, "storey", "substructure.storey") {
 		s.Storeys = append(s.Storeys, r.section(&storeySection, storey, "substructure.storey["+strconv.Itoa(i)+"]", quantity.None))
 	}
@@ -319,9 +325,6 @@ func (r *reader) substructure(root map[string]any, drives excitation.Drives) *Su
 		r.failf("substructure", "needs storeys, [[substructure.storey]], or both mass_matrix and stiffness_matrix")
 	case s.Levels() > substructure.MaxLevels:
 		r.failf("substructure", "has %d levels; at most %d", s.Levels(), substructure.MaxLevels)
-	}
-	if _, err := substructure.Integrators.Find(s.Values.Text("integrator")); err != nil {
-		r.fail("substructure.integrator", err)
 	}
 	return s
 }
@@ -369,6 +372,31 @@ func (r *reader) levels(s *Scenario) {
 	}
 	if level > n {
 		r.failf("excitation.level", "is %d; the structure has levels 1 to %d", level, n)
+	}
+}
+
+// idle complains about what is set and would do nothing: who set it expects
+// something.
+func (r *reader) idle(s *Scenario) {
+	e, _ := r.doc.tree["excitation"].(map[string]any)
+	if _, set := e["level"]; set && s.Excitation.Drives != excitation.Force && !s.Excitation.Part.Values.Has("level") {
+		r.failf("excitation.level", "is for drives = \"force\"; here the excitation drives the %s", s.Excitation.Values.Text("drives"))
+	}
+	if s.Excitation.Drives != excitation.Target {
+		if s.Accept.Has("spectrum_error") {
+			r.failf("accept.spectrum_error", "is for drives = \"target\": it compares the motion of a table with its target")
+		}
+		return
+	}
+	for i, c := range r.tables(r.doc.tree, "channel", "channel") {
+		if _, set := c["between"]; set {
+			r.failf("channel["+strconv.Itoa(i)+"].between", "means nothing with drives = \"target\": there is no structure")
+		}
+	}
+	for _, limit := range []string{"energy_margin", "response_error"} {
+		if s.Accept.Has(limit) {
+			r.failf("accept."+limit, "cannot be judged with drives = \"target\": there is no structure and no loop")
+		}
 	}
 }
 

@@ -80,6 +80,8 @@ func TestWrongFiles(t *testing.T) {
 		{"missing record", "kind = \"sine\"\namplitude = \"0.1 g\"\nfrequency = \"1.5 Hz\"", "kind = \"record\"\nfile = \"nowhere.txt\"\nunit = \"g\"\nstep = \"20 ms\"", `x.toml:12: excitation.file: `},
 		{"driven dimension", `amplitude = "0.1 g"`, `amplitude = "10 kN"`, `x.toml:12: excitation.amplitude: "10 kN" is a force (N); it must be an acceleration (m/s^2)`},
 		{"structure under a driven target", `kind = "sine"`, "kind = \"sine\"\ndrives = \"target\"", `x.toml:`},
+		{"level without force", `kind = "sine"`, "kind = \"sine\"\nlevel = 1", `x.toml:12: excitation.level: is for drives = "force"`},
+		{"amplitude beyond sense", `"0.1 g"`, `"1e30 g"`, `x.toml:12: excitation.amplitude: 9.80665e+30 m/s² is above 1000 m/s²`},
 		{"unknown drive", `kind = "sine"`, "kind = \"sine\"\ndrives = \"sky\"", `x.toml:12: excitation.drives: unknown word "sky"`},
 		{"unknown integrator", `damping_ratio = 0.03`, `integrator = "newmark"`, `x.toml:6: substructure.integrator: unknown integrator kind "newmark"; did you mean "newmark-explicit"?`},
 		{"ratio and dashpot", `stiffness = "4 kN/mm"`, "stiffness = \"4 kN/mm\"\ndamping = \"1 kN*s/m\"", `x.toml:`},
@@ -110,6 +112,31 @@ func TestWrongFiles(t *testing.T) {
 				t.Errorf("more than one line: %v", err)
 			}
 		})
+	}
+}
+
+// What would need more memory than a laptop has, or a step at which explicit
+// Newmark cannot be stable, is refused before anything is allocated.
+func TestRefusedBeforeBuilding(t *testing.T) {
+	for _, c := range []struct{ path, value, also, want string }{
+		{"substructure.integrator", "newmark-explicit", "substructure.storey[0].stiffness=1e9 N/mm", `x.toml:3: loop.rate: the model step of 1 ms is not below`},
+		{"loop.rate", "100000 Hz", "loop.duration=86400 s", `x.toml:2: loop: 1 lanes of 1 channels`},
+	} {
+		also, err := ParseChange(c.also)
+		if err != nil {
+			t.Fatal(err)
+		}
+		changes := []Change{{c.path, c.value}, also}
+		if c.path == "loop.rate" {
+			changes = append(changes, Change{"loop.energy_window", "86400 s"})
+		}
+		s, err := Parse("x.toml", []byte(base), ".", changes...)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if _, err := s.Build(); err == nil || !strings.HasPrefix(err.Error(), c.want) {
+			t.Errorf("%v: got %v\nwant %s", changes, err, c.want)
+		}
 	}
 }
 
@@ -229,6 +256,7 @@ func TestExamplesLoad(t *testing.T) {
 		"[channel.compensator]": cut("[channel.compensator]", ""),
 		"[channel.actuator]":    cut("[channel.actuator]", "[[channel.specimen]]"),
 		"[[channel.specimen]]":  cut("[[channel.specimen]]", "[channel.compensator]"),
+		"[substructure]":        cut("[substructure]", "[[substructure.storey]]"),
 		"[excitation]":          cut("[excitation]", "[[channel]]"),
 	}
 	for _, chapter := range Chapters() {
@@ -237,13 +265,13 @@ func TestExamplesLoad(t *testing.T) {
 			continue
 		}
 		for _, k := range chapter.Kinds {
-			text := strings.Replace(base, old, Example(chapter.Header, k), 1)
+			text := strings.Replace(base, old, chapter.Example(k), 1)
 			s, err := Parse(k.Name+".toml", []byte(text), dir)
 			if err == nil {
 				_, err = s.Build()
 			}
 			if err != nil {
-				t.Errorf("%v\n%s", err, Example(chapter.Header, k))
+				t.Errorf("%v\n%s", err, chapter.Example(k))
 			}
 		}
 	}

@@ -27,13 +27,13 @@ type Scenario struct {
 	Accept       kind.Values // limits that were given
 	Spread       []Spread
 
-	doc   *document
-	files opener
+	doc *document
+	dir string // where the files that it names are looked for
 }
 
 // Substructure is the numerical substructure as written.
 type Substructure struct {
-	Values  kind.Values
+	Part                  // the section with the settings of its integrator
 	Storeys []kind.Values // none: full matrices
 }
 

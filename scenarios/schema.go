@@ -1,8 +1,11 @@
 package scenarios
 
 import (
+	"slices"
+
 	"antelag/plant"
 	"antelag/rtloop/excitation"
+	"antelag/rtloop/substructure"
 	"antelag/scenarios/kind"
 	"antelag/scenarios/quantity"
 )
@@ -22,16 +25,28 @@ var loopSection = kind.Kind{
 	},
 }
 
+const defaultIntegrator = "CR"
+
 var substructureSection = kind.Kind{
 	Name: "substructure", Doc: "the numerical substructure: storeys, or full matrices", Source: "common practice",
 	Settings: []kind.Setting{
-		kind.FreeText("integrator", "how the structure is integrated; see describe integrators").DefaultText("CR"),
+		kind.FreeText("integrator", "how the structure is integrated; see describe integrators").DefaultText(defaultIntegrator),
 		kind.Numbers("damping_ratio", quantity.None, "Rayleigh damping: the ratio of first and last mode of the whole structure, or one each").Optional().Range(0, 1),
 		kind.Matrix("mass_matrix", quantity.Mass, "full mass matrix, instead of storeys").Optional(),
 		kind.Matrix("stiffness_matrix", quantity.Stiffness, "full stiffness matrix, instead of storeys").Optional(),
 		kind.Matrix("damping_matrix", quantity.Damping, "full damping matrix, instead of a ratio").Optional(),
 		kind.Numbers("influence", quantity.None, "how the ground motion acts on each level of full matrices; default all 1").Optional().Range(-10, 10),
 	},
+}
+
+// substructureKind is the [substructure] section with the settings of its
+// integrator.
+func substructureKind(integrator string) *kind.Kind {
+	k := substructureSection
+	if entry, err := substructure.Integrators.Find(integrator); err == nil {
+		k.Settings = append(slices.Clone(k.Settings), entry.Settings...)
+	}
+	return &k
 }
 
 var storeySection = kind.Kind{
@@ -71,6 +86,7 @@ var acceptSection = kind.Kind{
 		kind.Number("delay", quantity.Time, "largest remaining delay, late or early").Optional().Range(0, 1),
 		kind.Number("peak_error", quantity.Length, "largest tracking error").Optional().Range(0, 10),
 		kind.Number("energy_margin", quantity.None, "smallest energy margin at any time of the run").Optional().Range(-10, 1),
+		kind.Number("spectrum_error", quantity.None, "largest rms deviation of the measured response spectrum (5 % damping, 0.1 s to 3 s) from the target's; for a driven target").Optional().Range(0, 10),
 		kind.Number("response_error", quantity.None, "largest rms error of the structure's response over rms reference response").Optional().Range(0, 10),
 	},
 }

@@ -7,6 +7,7 @@ import (
 	"strings"
 
 	"antelag/plant"
+	"antelag/rtloop/excitation"
 	"antelag/scenarios/kind"
 	"antelag/scenarios/quantity"
 )
@@ -19,7 +20,7 @@ func (s *Scenario) WriteTo(w io.Writer) (int64, error) {
 	p.printf("title = %s\n", quote(s.Title))
 	p.section("[loop]", &loopSection, s.Loop)
 	if sub := s.Substructure; sub != nil {
-		p.section("[substructure]", &substructureSection, sub.Values)
+		p.section("[substructure]", sub.Kind, sub.Values)
 		for _, v := range sub.Storeys {
 			p.section("[[substructure.storey]]", &storeySection, v)
 		}
@@ -44,10 +45,9 @@ func (s *Scenario) WriteTo(w io.Writer) (int64, error) {
 	return int64(n), err
 }
 
-// excitationValues are the section's own settings; a release has no level of
-// force beside the one it holds.
+// excitationValues are the section's own settings; only a force has a level.
 func (s *Scenario) excitationValues() kind.Values {
-	if !s.Excitation.Part.Values.Has("level") {
+	if s.Excitation.Drives == excitation.Force {
 		return s.Excitation.Values
 	}
 	own := kind.Values{}

@@ -6,9 +6,13 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"io/fs"
 	"os"
 	"os/signal"
+	"strconv"
+	"strings"
 	"syscall"
+	"unicode"
 )
 
 // The exit codes.
@@ -23,21 +27,38 @@ func main() { os.Exit(run(os.Args[1:])) }
 func run(args []string) int {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	defer stop()
+	context.AfterFunc(ctx, stop) // a second Ctrl-C ends at once
 	root := newRoot()
 	root.SetArgs(args)
 	err := root.ExecuteContext(ctx)
-	var failed *failure
 	switch {
 	case err == nil:
 		return exitGood
 	case errors.Is(err, errVerdict):
 		return exitFail
-	case errors.As(err, &failed):
-		fmt.Fprintln(os.Stderr, "antelag:", err)
+	}
+	complain(err)
+	var failed *failure
+	var path *fs.PathError
+	if errors.As(err, &failed) || errors.As(err, &path) && path.Op == "write" {
 		return exitFail
 	}
-	fmt.Fprintln(os.Stderr, "antelag:", err)
 	return exitUsage
+}
+
+// complain says what is wrong in one line. What it quotes from files and
+// arguments may hold anything; what cannot be printed is escaped.
+func complain(err error) {
+	var line strings.Builder
+	for _, r := range err.Error() {
+		if unicode.IsPrint(r) {
+			line.WriteRune(r)
+			continue
+		}
+		escaped := strconv.QuoteRune(r)
+		line.WriteString(escaped[1 : len(escaped)-1])
+	}
+	fmt.Fprintln(os.Stderr, "antelag:", line.String())
 }
 
 // errVerdict ends a command that ran and has said that a limit was failed.

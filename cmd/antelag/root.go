@@ -1,9 +1,12 @@
 package main
 
 import (
+	"fmt"
+
 	"github.com/spf13/cobra"
 
 	"antelag/scenarios"
+	"antelag/scenarios/kind"
 )
 
 const about = `antelag tunes the delay compensation of a real-time hybrid test before a
@@ -25,7 +28,7 @@ func newRoot() *cobra.Command {
 		Use:           "antelag",
 		Short:         "tune the delay compensation of a real-time hybrid test",
 		Long:          about,
-		Args:          cobra.NoArgs,
+		Args:          noCommand,
 		Version:       version(),
 		SilenceErrors: true,
 		SilenceUsage:  true,
@@ -36,4 +39,19 @@ func newRoot() *cobra.Command {
 	root.SetVersionTemplate("antelag {{.Version}}\n")
 	root.AddCommand(newRun(), newScenarios(), newDescribe(), newVersion())
 	return root
+}
+
+// noCommand refuses arguments of the bare command: what stands there is meant
+// to be a command, or a scenario.
+func noCommand(cmd *cobra.Command, args []string) error {
+	if len(args) == 0 {
+		return nil
+	}
+	var known []string
+	for _, c := range cmd.Commands() {
+		if c.IsAvailableCommand() {
+			known = append(known, c.Name())
+		}
+	}
+	return fmt.Errorf("%w; a scenario is run by antelag run SCENARIO", &kind.UnknownError{What: "command", Got: args[0], Known: known})
 }

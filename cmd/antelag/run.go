@@ -1,10 +1,14 @@
 package main
 
 import (
+	"context"
 	"encoding/json"
 	"errors"
 	"fmt"
+	"io"
+	"io/fs"
 	"os"
+	"strings"
 	"time"
 
 	"github.com/spf13/cobra"
@@ -35,7 +39,12 @@ file or the name of an embedded one. The configured lane decides the exit code:
 0 good, 1 a limit failed, a trip or divergence, 2 bad input.
 
 ` + cautions,
-		Args:              cobra.MinimumNArgs(1),
+		Args: func(_ *cobra.Command, args []string) error {
+			if len(args) == 0 {
+				return fmt.Errorf("run takes a SCENARIO: a file, or one of %s", strings.Join(scenarios.Names(), ", "))
+			}
+			return nil
+		},
 		ValidArgsFunction: completeScenario,
 		RunE:              o.run,
 	}
@@ -49,43 +58,43 @@ file or the name of an embedded one. The configured lane decides the exit code:
 }
 
 func (o *runOptions) run(cmd *cobra.Command, args []string) error {
+	if o.log == "" && cmd.Flags().Changed("log-lane") {
+		return errors.New("--log-lane says which lane --log writes; there is no --log")
+	}
 	tests, err := o.load(args)
 	if err != nil {
 		return err
 	}
 	var verdicts []*accept.Verdict
-	var failed error
+	good := true
 	for _, s := range tests {
-		v, err := o.one(cmd, s)
+		var v *accept.Verdict
+		v, err = o.one(cmd.Context(), s)
 		if v != nil {
 			verdicts = append(verdicts, v)
+			good = good && v.Pass()
 		}
-		if err != nil {
-			failed = err
-			break
-		}
-		if cmd.Context().Err() != nil {
+		if err != nil || cmd.Context().Err() != nil {
 			break
 		}
 	}
-	if failed != nil && len(verdicts) == 0 {
-		return failed
+	if len(verdicts) == 0 {
+		return err
 	}
-	if err := o.print(cmd, verdicts); err != nil {
+	if e := o.print(cmd.OutOrStdout(), verdicts, len(tests) > 1); e != nil {
+		return &failure{e}
+	}
+	switch {
+	case err != nil:
 		return &failure{err}
-	}
-	if failed != nil {
-		return &failure{failed}
-	}
-	for _, v := range verdicts {
-		if !v.Pass() {
-			return errVerdict
-		}
+	case !good || len(verdicts) < len(tests):
+		return errVerdict
 	}
 	return nil
 }
 
-// load reads all scenarios before any runs, so that bad input costs nothing.
+// load reads and builds all scenarios before any runs, so that bad input costs
+// nothing and leaves nothing.
 func (o *runOptions) load(args []string) ([]*scenarios.Scenario, error) {
 	if o.log != "" && len(args) > 1 {
 		return nil, errors.New("--log takes one scenario at a time")
@@ -104,61 +113,95 @@ func (o *runOptions) load(args []string) ([]*scenarios.Scenario, error) {
 		if err != nil {
 			return nil, err
 		}
+		if len(args) > 1 || o.log != "" { // a single run without a log is built when it runs
+			if _, err := s.Build(); err != nil {
+				return nil, err
+			}
+		}
 		tests = append(tests, s)
 	}
 	return tests, nil
 }
 
 // one runs one scenario, with its log if asked for.
-func (o *runOptions) one(cmd *cobra.Command, s *scenarios.Scenario) (*accept.Verdict, error) {
-	options := accept.Options{Progress: progress(s.Name)}
-	var log *runlog.Writer
-	if o.log != "" {
-		if err := s.CheckLane(o.logLane); err != nil {
-			return nil, fmt.Errorf("--log-lane: %w", err)
-		}
-		if _, err := s.Build(); err != nil { // nothing is written for what cannot run
-			return nil, err
-		}
-		var err error
-		log, err = runlog.Create(o.log, s.ChannelNames(), s.Excitation.Drives, s.Provenance(version(), o.logLane, time.Now()), o.force)
-		if err != nil {
-			return nil, err
-		}
-		options.Observe = func(lane string) func(*rtloop.Loop) error {
-			if lane != o.logLane {
-				return nil
-			}
-			return log.Row
-		}
+func (o *runOptions) one(ctx context.Context, s *scenarios.Scenario) (*accept.Verdict, error) {
+	bar := newProgress(s.Name)
+	defer bar.clear()
+	defer context.AfterFunc(ctx, bar.clear)() // the last figures may take a moment
+	options := accept.Options{Progress: bar.report}
+	if o.log == "" {
+		return accept.Run(ctx, s, options)
 	}
-	v, err := accept.Run(cmd.Context(), s, options)
-	if log != nil {
-		if e := log.Close(); err == nil {
-			err = e
+	log, err := o.create(s)
+	if err != nil {
+		return nil, err
+	}
+	options.Observe = func(lane string) func(*rtloop.Loop) error {
+		if lane != o.logLane {
+			return nil
 		}
+		return log.Row
+	}
+	v, err := accept.Run(ctx, s, options)
+	if e := log.Close(); err == nil {
+		err = e
 	}
 	return v, err
 }
 
-func (o *runOptions) print(cmd *cobra.Command, verdicts []*accept.Verdict) error {
-	out := cmd.OutOrStdout()
+// create makes the log and its provenance. That they exist, or would replace
+// the scenario itself, is for the user to put right; that they cannot be
+// written is a failure.
+func (o *runOptions) create(s *scenarios.Scenario) (*runlog.Writer, error) {
+	if err := s.CheckLane(o.logLane); err != nil {
+		return nil, fmt.Errorf("--log-lane: %w", err)
+	}
+	for _, path := range []string{o.log, o.log + ".toml"} {
+		if sameFile(path, s.Name) {
+			return nil, fmt.Errorf("--log %s: %s is the scenario itself; choose another name", o.log, path)
+		}
+	}
+	log, err := runlog.Create(o.log, s.ChannelNames(), s.Excitation.Drives, s.Provenance(version(), o.logLane, time.Now()), o.force)
+	switch {
+	case errors.Is(err, fs.ErrExist):
+		return nil, fmt.Errorf("--log: %w", err)
+	case err != nil:
+		return nil, &failure{fmt.Errorf("--log: %w", err)}
+	}
+	return log, nil
+}
+
+func sameFile(a, b string) bool {
+	x, err := os.Stat(a)
+	if err != nil {
+		return false
+	}
+	y, err := os.Stat(b)
+	return err == nil && os.SameFile(x, y)
+}
+
+func (o *runOptions) print(out io.Writer, verdicts []*accept.Verdict, several bool) error {
 	if o.json {
 		e := json.NewEncoder(out)
 		e.SetIndent("", " ")
-		if len(verdicts) == 1 {
-			return e.Encode(verdicts[0])
+		if several {
+			return e.Encode(map[string]any{"runs": verdicts})
 		}
-		return e.Encode(map[string]any{"runs": verdicts})
+		return e.Encode(verdicts[0])
 	}
-	colour := term.IsTerminal(int(os.Stdout.Fd())) && os.Getenv("NO_COLOR") == ""
 	for i, v := range verdicts {
 		if i > 0 {
 			fmt.Fprintln(out)
 		}
-		if err := v.WriteText(out, colour); err != nil {
+		if err := v.WriteText(out, inColour()); err != nil {
 			return err
 		}
 	}
 	return nil
+}
+
+// inColour reports whether stdout takes colours and nobody said no
+// (https://no-color.org).
+func inColour() bool {
+	return term.IsTerminal(int(os.Stdout.Fd())) && os.Getenv("NO_COLOR") == "" && os.Getenv("TERM") != "dumb"
 }

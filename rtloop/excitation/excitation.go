@@ -60,5 +60,5 @@ type New func(c Context, v kind.Values) (Source, error)
 
 // Kinds is the table of excitation kinds.
 var Kinds = kind.Table[New]{What: "excitation", Entries: []kind.Entry[New]{
-	recordKind, filteredNoiseKind, sineKind, sweepKind, pulseKind, releaseKind,
+	recordKind, filteredNoiseKind, bandNoiseKind, sineKind, sweepKind, pulseKind, cyclicKind, releaseKind,
 }}

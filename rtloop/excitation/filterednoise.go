@@ -14,8 +14,9 @@ var filteredNoiseKind = kind.Entry[New]{
 		Name: "filtered-noise",
 		Doc:  "an artificial ground motion: filtered white noise under an envelope, another for every seed",
 		Equation: "z̈ + 2ζg ωg ż + ωg² z = −w, a = z̈ + w; ÿ + 2ζf ωf ẏ + ωf² y = a; " +
-			"x(t) = peak · e(t) ÿ(t) / max |e ÿ|, w white noise, e rising, level and falling in straight lines",
-		Source: "Kanai 1957, Tajimi 1960 (ground filter); Clough & Penzien 1975 (high-pass)",
+			"x(t) = peak · e(t) ÿ(t) / max |e ÿ|, w white noise; e rising, level and falling in straight lines, or " +
+			"saragoni-hart: e = exp(b (ln τ + 1 − τ)), τ = t/(ε tn), b = −ε ln η/(1 + ε (ln ε − 1)), tn = rise + strong + decay",
+		Source: "Kanai 1957, Tajimi 1960 (ground filter); Clough & Penzien 1975 (high-pass); Saragoni & Hart 1974 (envelope)",
 		Settings: []kind.Setting{
 			kind.Driven("peak", "largest absolute value of the whole history; a negative one turns it over"),
 			kind.Number("ground_frequency", quantity.Frequency, "frequency ωg/2π of the ground filter").
@@ -32,6 +33,12 @@ var filteredNoiseKind = kind.Entry[New]{
 				Default(10).Range(0, longest),
 			kind.Number("decay", quantity.Time, "time in which it dies away; nothing follows").
 				Default(8).Range(0, longest),
+			kind.Word("envelope", "how the strength runs: in straight lines, or along the smooth curve of Saragoni & Hart over the same time tn = rise + strong + decay",
+				trapezoidWord, saragoniWord),
+			kind.Number("epsilon", quantity.None, "with envelope saragoni-hart: the part ε of tn after which the strength is greatest").
+				Default(0.2).Range(0.05, 0.7),
+			kind.Number("eta", quantity.None, "with envelope saragoni-hart: the part η of the greatest strength that is left at tn").
+				Default(0.05).Range(0.001, 0.5),
 		},
 	},
 	New: newFilteredNoise,
@@ -58,7 +65,7 @@ var filteredNoiseKind = kind.Entry[New]{
 type filteredNoise struct {
 	clock
 	process *sampler
-	env     trapezoid
+	env     envelope
 	rate    float64 // of the grid, Hz
 	scale   float64
 	n       int64   // grid index of the end; zero from there on
@@ -79,11 +86,15 @@ func newFilteredNoise(c Context, v kind.Values) (Source, error) {
 	fg, ff := v.Num("ground_frequency"), v.Num("highpass_frequency")
 	s := &filteredNoise{
 		clock: clk,
-		env:   trapezoid{v.Num("rise"), v.Num("strong"), v.Num("decay")},
 		rate:  math.Max(gridRate, samplesPerPeriod*math.Max(fg, ff)),
 	}
-	if s.env.length() == 0 {
+	lines := &trapezoid{v.Num("rise"), v.Num("strong"), v.Num("decay")}
+	if lines.length() == 0 {
 		return nil, errors.New("strong: rise, strong and decay are all zero, so nothing would move")
+	}
+	s.env = lines
+	if v.Text("envelope") == saragoniWord {
+		s.env = newSaragoniHart(v.Num("epsilon"), v.Num("eta"), lines.length())
 	}
 	s.process, err = groundProcess(fg, v.Num("ground_damping"), ff, v.Num("highpass_damping"), s.rate, c.Seed)
 	if err != nil {
@@ -169,21 +180,3 @@ func (s *filteredNoise) Fill(dst []float64) {
 		dst[i] = s.a + (p-float64(j))*(s.b-s.a)
 	}
 }
-
-// trapezoid is an envelope that rises from 0 to 1, stays, and falls to 0, all
-// in straight lines; its fields are the times that takes, s.
-type trapezoid struct{ rise, strong, decay float64 }
-
-// at returns the envelope at t ≥ 0, s.
-func (e *trapezoid) at(t float64) float64 {
-	switch {
-	case t < e.rise:
-		return t / e.rise
-	case t <= e.rise+e.strong:
-		return 1
-	}
-	return math.Max(0, 1-(t-e.rise-e.strong)/e.decay) // decay 0: −∞, so 0
-}
-
-// length returns the time after which the envelope is zero, s.
-func (e *trapezoid) length() float64 { return e.rise + e.strong + e.decay }

@@ -14,9 +14,11 @@ var recordKind = kind.Entry[New]{
 	Kind: kind.Kind{
 		Name: "record",
 		Doc:  "a time history from a file: PEER NGA AT2, columns of time and value, or values with a given step",
-		Equation: "x(t) = scale·record(start + t), linear between the record's samples; " +
-			"after the end 0 for ground and force, the last value for a target",
-		Source: "common practice; AT2 is the file form of the PEER NGA ground motion database",
+		Equation: "x(t) = scale·record(start + t/√λ), linear between the record's samples, displacements times λ; " +
+			"after the end 0 for ground and force, the last value for a target. A target of an acceleration record: " +
+			"x(t) = ∬ a dt², a the record without its straight-line trend and below the corner frequency, at rest at both ends",
+		Source: "common practice; AT2 is the file form of the PEER NGA ground motion database; " +
+			"baseline correction after Converse & Brady 1992 and Boore 2005 (zero pads, acausal Butterworth high-pass)",
 		Settings: []kind.Setting{
 			kind.FreeText("file", "file of the record, relative to the scenario"),
 			kind.Number("step", quantity.Time, "time between values; every number of the file is then a value").
@@ -27,6 +29,10 @@ var recordKind = kind.Entry[New]{
 				Range(-longest, longest).Optional(),
 			kind.Number("end", quantity.Time, "record time at which the motion ends; without it the last sample").
 				Range(-longest, longest).Optional(),
+			kind.Number("length_factor", quantity.None, "similitude: model length over prototype length λ; time is multiplied by √λ, displacement by λ, acceleration kept").
+				Default(1).Range(1e-4, 1e4),
+			kind.Number("corner_frequency", quantity.Frequency, "where an acceleration drives a target: corner of the high-pass, in the record's own time").
+				Default(0.1).Range(lowestFrequency, highestFrequency),
 		},
 	},
 	New: newRecord,
@@ -41,13 +47,22 @@ func newRecord(c Context, v kind.Values) (Source, error) {
 	if err != nil {
 		return nil, err
 	}
-	if err := toSI(&rec, c, v); err != nil {
+	dim, err := toSI(&rec, c, v)
+	if err != nil {
 		return nil, err
 	}
 	start, end, err := window(&rec, v)
 	if err != nil {
 		return nil, err
 	}
+	factor := v.Num("length_factor")
+	if c.Drives == Force && factor != 1 {
+		return nil, fmt.Errorf("length_factor: %g; with drives = %q it must be 1, for how forces scale hangs on the material too", factor, Words[Force])
+	}
+	if c.Drives == Target && dim == quantity.Acceleration {
+		return newIntegrated(clk, &rec, start, end, v)
+	}
+	start, end = stretch(&rec, start, end, factor, c.Drives)
 	if rec.Times != nil {
 		return newUneven(clk, &rec, start, end, c.Drives), nil
 	}
@@ -71,35 +86,36 @@ func openRecord(c Context, v kind.Values) (Record, error) {
 	return ReadRecord(f, name, step)
 }
 
-// toSI scales the values and turns them into the unit of what is driven.
-func toSI(rec *Record, c Context, v kind.Values) error {
+// toSI scales the values and turns them into SI: into the unit of what is
+// driven, or for a target from an acceleration into m/s². It returns which.
+func toSI(rec *Record, c Context, v kind.Values) (quantity.Dim, error) {
 	text := rec.Unit
 	if v.Has("unit") {
 		text = v.Text("unit")
 	}
-	want := c.Drives.Dim()
+	want := c.Drives.Dim().String()
+	if c.Drives == Target {
+		want += " or " + quantity.Acceleration.String()
+	}
 	if text == "" {
-		return fmt.Errorf("unit: %s does not say the unit of its values; give one, it must be %s", v.Text("file"), want)
+		return quantity.None, fmt.Errorf("unit: %s does not say the unit of its values; give one, it must be %s", v.Text("file"), want)
 	}
 	u, err := quantity.ParseUnit(text)
-	switch {
-	case err != nil:
-		return fmt.Errorf("unit: %w", err)
-	case c.Drives == Target && u.Dim == quantity.Acceleration:
-		return fmt.Errorf("unit: %q is %s; with drives = %q the record is taken as displacement, so its unit must be %s",
-			text, u.Dim, Words[Target], want)
-	case u.Dim != want:
-		return fmt.Errorf("unit: %q is %s; with drives = %q it must be %s", text, u.Dim, Words[c.Drives], want)
+	if err != nil {
+		return quantity.None, fmt.Errorf("unit: %w", err)
+	}
+	if u.Dim != c.Drives.Dim() && !(c.Drives == Target && u.Dim == quantity.Acceleration) {
+		return quantity.None, fmt.Errorf("unit: %q is %s; with drives = %q it must be %s", text, u.Dim, Words[c.Drives], want)
 	}
 	scale := v.Num("scale")
 	for i, x := range rec.Values {
 		si := u.SI(x) * scale
 		if math.IsNaN(si) || math.IsInf(si, 0) {
-			return fmt.Errorf("unit: %g %s is beyond the largest number", x, text)
+			return quantity.None, fmt.Errorf("unit: %g %s is beyond the largest number", x, text)
 		}
 		rec.Values[i] = si
 	}
-	return nil
+	return u.Dim, nil
 }
 
 // window returns the record times between which the record is used.
@@ -119,6 +135,24 @@ func window(rec *Record, v kind.Values) (start, end float64, err error) {
 		return 0, 0, fmt.Errorf("end: %g s is not after the start of the motion at %g s", v.Num("end"), start)
 	}
 	return start, end, nil
+}
+
+// stretch carries a record into the time of a model whose lengths are factor
+// times those of the prototype, with the gravity of both: times grow by
+// √factor, displacements by factor, and accelerations stay. It returns the
+// window in that time.
+func stretch(rec *Record, start, end, factor float64, d Drives) (float64, float64) {
+	r := math.Sqrt(factor)
+	rec.Step *= r
+	for i := range rec.Times {
+		rec.Times[i] *= r
+	}
+	if d == Target {
+		for i := range rec.Values {
+			rec.Values[i] *= factor
+		}
+	}
+	return start * r, end * r
 }
 
 // even is a record of evenly spaced samples, linear between them:

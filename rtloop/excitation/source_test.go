@@ -63,6 +63,11 @@ var every = []struct {
 }{
 	{"even record", "record", kind.Values{"file": kind.Text("column1.txt"), "step": kind.Num(0.02), "unit": kind.Text("g")}, Ground},
 	{"uneven record", "record", kind.Values{"file": kind.Text("uneven.txt"), "unit": kind.Text("mm"), "start": kind.Num(0.52)}, Target},
+	{"target of an acceleration", "record", kind.Values{"file": kind.Text("column1.txt"), "step": kind.Num(0.02), "unit": kind.Text("g"), "corner_frequency": kind.Num(0.5), "length_factor": kind.Num(5)}, Target},
+	{"Saragoni-Hart noise", "filtered-noise", kind.Values{"peak": kind.Num(3), "rise": kind.Num(0.3), "strong": kind.Num(1), "decay": kind.Num(0.4), "envelope": kind.Text("saragoni-hart")}, Ground},
+	{"band noise", "band-noise", kind.Values{"rms": kind.Num(3), "low": kind.Num(0.5), "high": kind.Num(8)}, Target},
+	{"cyclic list", "cyclic", kind.Values{"amplitudes": kind.List(1, -2), "repeats": kind.List(3, 2), "period": kind.Num(0.3)}, Force},
+	{"cyclic protocol", "cyclic", kind.Values{"protocol": kind.Text("aisc-341"), "unit_amplitude": kind.Num(3), "period": kind.Num(0.04)}, Target},
 	{"filtered noise", "filtered-noise", kind.Values{"peak": kind.Num(3), "rise": kind.Num(0.3), "strong": kind.Num(1), "decay": kind.Num(0.4)}, Ground},
 	{"sine", "sine", kind.Values{"amplitude": kind.Num(2), "frequency": kind.Num(1.7)}, Force},
 	{"linear sweep", "sweep", kind.Values{"amplitude": kind.Num(2), "from": kind.Num(0.5), "to": kind.Num(9)}, Target},
@@ -186,6 +191,8 @@ func BenchmarkFill(b *testing.B) {
 			switch s := s.(type) {
 			case *even:
 				again = func() { s.k = 0 }
+			case *integrated:
+				again = func() { s.k, s.j, s.m = 0, 0, motionState{}; s.polynomial() }
 			case *uneven:
 				again = func() { s.k, s.j = 0, 0 }
 			}

@@ -39,7 +39,8 @@ type EnergyTick struct {
 //
 // Until the window is full it covers what there is; the margin is NaN for the
 // first fifth of it (one period, when the window is five), and while W_d is no
-// more than a thousandth of the largest it has been, where a ratio says nothing.
+// more than a thousandth of the largest it has been, or than a billionth of the
+// energy of the motion, where a ratio says nothing or is one of roundings.
 //
 // A tick costs the same whatever has gone before. The sums over the window are
 // kept as in Tracking, so that no rounding error lives longer than two windows;
@@ -54,6 +55,7 @@ type Energy struct {
 
 	early   int     // ticks until the margin means something
 	half    float64 // half a tick, s
+	trifle  float64 // W_d over ∫vᵀMv dt at which it is rounding, 1/s
 	vcv     float64 // at the newest tick's end
 	vmv     float64
 	ama     float64
@@ -82,8 +84,12 @@ type work struct {
 	acceleration float64 // ∫aᵀMa dt, J/s
 }
 
-// floor is the share of the largest W_d that W_d must pass for a margin.
-const floor = 1e-3
+// What W_d must pass for a margin: this share of the largest W_d so far, and this
+// share of the mean of vᵀMv over the window.
+const (
+	floor    = 1e-3
+	rounding = 1e-9
+)
 
 // NewEnergy returns gauges over a trailing window of that many ticks (at least 1)
 // of dt model seconds each. Start comes before the first Add.
@@ -99,7 +105,8 @@ func NewEnergy(window int, dt float64) *Energy {
 func (e *Energy) Start(first EnergyTick) {
 	*e = Energy{
 		ring: e.ring, half: e.half, early: (len(e.ring) + 4) / 5,
-		vcv: first.VCV, vmv: first.VMV, ama: first.AMA, strain: first.Strain,
+		trifle: rounding / (2 * e.half * float64(len(e.ring))),
+		vcv:    first.VCV, vmv: first.VMV, ama: first.AMA, strain: first.Strain,
 		margin: math.NaN(), lowest: math.Inf(1),
 	}
 	e.injected.Add(first.Injected)
@@ -177,7 +184,7 @@ func (e *Energy) judge() {
 	if damped > e.largest {
 		e.largest = damped
 	}
-	if !(damped > floor*e.largest) || !e.full && e.at < e.early {
+	if !(damped > floor*e.largest && damped > e.trifle*e.running.motion) || !e.full && e.at < e.early {
 		e.margin = math.NaN()
 		return
 	}

@@ -37,12 +37,12 @@ type feiSums struct {
 // constant is the share of Σ|x|² below which a spectrum is rounding.
 const constant = 1e-24
 
-// add adds the segment that the workspace holds, and leaves the spectrum of x
-// there.
-func (s *feiSums) add(w *workspace) {
+// add adds the segment that the workspace holds, leaves the spectra there, and
+// returns of how many ticks they are.
+func (s *feiSums) add(w *workspace) int {
 	n := w.transform()
 	if n < 2 {
-		return
+		return n
 	}
 	var re, im, power, moment float64
 	spectrumY := w.fy[:len(w.fx)]
@@ -57,11 +57,12 @@ func (s *feiSums) add(w *workspace) {
 	}
 	k := float64(n)
 	if power <= constant*k*dot(w.x, w.x) {
-		return // what is left of a target that stood still in the part transformed
+		return n // what is left of a target that stood still in the part transformed
 	}
 	s.cross += complex(re/k, im/k)
 	s.power += power / k
 	s.mean += moment / (k * k)
+	return n
 }
 
 func (s *feiSums) result(tick float64) FEI {

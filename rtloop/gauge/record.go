@@ -1,6 +1,7 @@
 package gauge
 
 import (
+	"maps"
 	"math"
 	"sync"
 )
@@ -17,6 +18,7 @@ type Alignment struct {
 	// and when no peak lies within the lags searched.
 	Delay float64
 	FEI   FEI
+	Bands []Band // with Record.Response, the frequency response; else nil
 }
 
 // Record keeps target and measured of every tick for what needs the whole
@@ -30,6 +32,8 @@ type Alignment struct {
 // The sample of Start is not part of the record: n ticks are then n samples, and
 // n ticks of a signal whose period divides them are whole periods.
 type Record struct {
+	Response bool // whether Finish also works out the frequency response
+
 	buf     []point
 	n       int
 	room    int // len(buf)
@@ -89,6 +93,7 @@ func (r *Record) full() {
 	r.folding.Wait()
 	if r.sums == nil {
 		r.sums = newAlignment(r.tick, r.segment)
+		r.sums.response = r.Response
 	}
 	if r.spare == nil {
 		r.spare = make([]point, r.segment)
@@ -112,7 +117,7 @@ func (r *Record) Finish() Alignment {
 	defer w.release()
 	rest := r.buf[:r.n]
 	if r.sums == nil {
-		return alignOnce(rest, r.tick, w)
+		return alignOnce(rest, r.tick, r.Response, w)
 	}
 	sums := r.sums
 	if len(rest) >= max(1, 4*sums.lags.max) {
@@ -124,41 +129,55 @@ func (r *Record) Finish() Alignment {
 
 // alignment is the sums over folded segments.
 type alignment struct {
-	tick float64
-	fei  feiSums
-	lags lagSums
+	tick     float64
+	response bool
+	fei      feiSums
+	bands    bandSums
+	lags     lagSums
 }
 
 func newAlignment(tick float64, ticks int) *alignment {
-	return &alignment{tick: tick, lags: newLagSums(maxLag(tick, ticks))}
+	return &alignment{tick: tick, bands: bandSums{}, lags: newLagSums(maxLag(tick, ticks))}
 }
 
 func (a *alignment) clone() *alignment {
-	return &alignment{tick: a.tick, fei: a.fei, lags: a.lags.clone()}
+	return &alignment{tick: a.tick, response: a.response, fei: a.fei, bands: maps.Clone(a.bands), lags: a.lags.clone()}
 }
 
 // fold adds one segment.
 func (a *alignment) fold(samples []point, w *workspace) {
 	w.load(samples)
-	a.fei.add(w)
+	n := a.fei.add(w)
+	if a.response {
+		a.bands.add(w, n)
+	}
 	a.lags.add(w)
 }
 
 func (a *alignment) result() Alignment {
 	best := pickPeak(a.lags.xy, 1)
 	delay := climb(best, a.lags.max, a.lags.coefficient)
-	return Alignment{Delay: delay * a.tick, FEI: a.fei.result(a.tick)}
+	out := Alignment{Delay: delay * a.tick, FEI: a.fei.result(a.tick)}
+	if a.response {
+		out.Bands = a.bands.result(a.tick)
+	}
+	return out
 }
 
 // alignOnce is the alignment of a run that was kept whole. A target that moves
 // slowly against the tick, as structures do, needs no correlation at every lag:
 // every stride-th sample finds the peak, and only the few lags around it are
 // worked out in full.
-func alignOnce(samples []point, tick float64, w *workspace) Alignment {
+func alignOnce(samples []point, tick float64, response bool, w *workspace) Alignment {
 	w.load(samples)
 	var fei feiSums
-	fei.add(w)
+	n := fei.add(w)
 	a := Alignment{Delay: math.NaN(), FEI: fei.result(tick)}
+	if response {
+		bands := bandSums{}
+		bands.add(w, n)
+		a.Bands = bands.result(tick)
+	}
 	most := maxLag(tick, len(samples))
 	if most < 1 || !w.movesX || !w.movesY {
 		return a

@@ -232,12 +232,12 @@ func TestMoreTicksThanExpected(t *testing.T) {
 	s := sines[0]
 	want := recorded(NewRecord(0.001, 5000), 5000, s.at).Finish()
 	for _, hint := range []int{-1, 0, 1, 100, 4999, 1e7} {
-		if got := recorded(NewRecord(0.001, hint), 5000, s.at).Finish(); got != want {
+		if got := recorded(NewRecord(0.001, hint), 5000, s.at).Finish(); got.Delay != want.Delay || got.FEI != want.FEI {
 			t.Errorf("hint %d: %+v, want %+v", hint, got, want)
 		}
 	}
 	r := recorded(NewRecord(0.001, 1), 77, sines[1].at)
-	if got := recorded(r, 5000, s.at).Finish(); got != want {
+	if got := recorded(r, 5000, s.at).Finish(); got.Delay != want.Delay || got.FEI != want.FEI {
 		t.Errorf("second run: %+v, want %+v", got, want)
 	}
 }

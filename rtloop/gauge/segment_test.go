@@ -61,7 +61,7 @@ func TestSegmentsAgainstTheWholeRecord(t *testing.T) {
 		r.Add(x, y)
 	}
 	a := r.Finish()
-	if again := r.Finish(); again != a {
+	if again := r.Finish(); again.Delay != a.Delay || again.FEI != a.FEI {
 		t.Errorf("a second Finish gives %+v after %+v", again, a)
 	}
 

@@ -11,10 +11,9 @@
 package runlog
 
 import (
-	"bufio"
+	"bytes"
 	"errors"
 	"fmt"
-	"io/fs"
 	"math"
 	"os"
 	"strconv"
@@ -24,81 +23,80 @@ import (
 	"antelag/rtloop/excitation"
 )
 
-// flushEvery is the longest that a row waits in memory.
-const flushEvery = time.Second
+const (
+	// flushEvery is the longest that a row waits in memory while rows come.
+	flushEvery = time.Second
+	// bufferSize is how much is gathered for one write, bytes.
+	bufferSize = 1 << 16
+)
 
-// Writer writes rows to a log file.
+// Writer writes rows to a log file. The file grows by whole rows, so that it
+// reads to its end at any time; only a program killed in the very middle of a
+// write leaves a last row that is cut off.
 type Writer struct {
 	file     *os.File
-	out      *bufio.Writer
-	line     []byte
+	rows     []byte // whole rows that are not in the file yet
+	written  int64  // bytes in the file
 	channels int
 	drives   excitation.Drives
 	flushed  time.Time
-	rows     int
+	err      error // of the first write that failed; nothing is written after it
 }
 
 // Create makes the log file and writes the header, and makes the provenance
 // file "<path>.toml" beside it with the given text. Neither may exist unless
-// force is set. Call Close at the end.
+// force is set; the error is then fs.ErrExist. When Create fails nothing new
+// is left behind, and when it could not open both files nothing has changed.
+// Call Close at the end.
 func Create(path string, channels []string, drives excitation.Drives, provenance string, force bool) (*Writer, error) {
-	if err := writeNew(path+".toml", provenance, force); err != nil {
-		return nil, err
-	}
-	f, err := create(path, force)
+	log, err := open(path, force)
 	if err != nil {
-		os.Remove(path + ".toml")
 		return nil, err
 	}
-	w := &Writer{file: f, out: bufio.NewWriterSize(f, 1<<16), channels: len(channels), drives: drives, flushed: time.Now()}
+	beside, err := open(path+".toml", force)
+	if err != nil {
+		log.discard()
+		return nil, err
+	}
+	w := &Writer{
+		file: log.File, rows: make([]byte, 0, bufferSize+bufferSize/4),
+		channels: len(channels), drives: drives, flushed: time.Now(),
+	}
+	err = errors.Join(log.empty(), beside.empty())
+	if err == nil {
+		_, err = beside.WriteString(provenance)
+	}
+	if e := beside.Close(); err == nil {
+		err = e
+	}
+	if err != nil {
+		beside.discard()
+		log.discard()
+		return nil, err
+	}
 	w.header(channels)
 	return w, nil
 }
 
-func create(path string, force bool) (*os.File, error) {
-	flags := os.O_WRONLY | os.O_CREATE | os.O_TRUNC
-	if !force {
-		flags |= os.O_EXCL
-	}
-	f, err := os.OpenFile(path, flags, 0o644)
-	if errors.Is(err, fs.ErrExist) {
-		return nil, fmt.Errorf("%s exists; --force overwrites it", path)
-	}
-	return f, err
-}
-
-func writeNew(path, text string, force bool) error {
-	f, err := create(path, force)
-	if err != nil {
-		return err
-	}
-	_, err = f.WriteString(text)
-	if e := f.Close(); err == nil {
-		err = e
-	}
-	return err
-}
-
 func (w *Writer) header(channels []string) {
-	w.line = append(w.line[:0], "time_s"...)
+	b := append(w.rows, "time_s"...)
 	switch w.drives {
 	case excitation.Ground:
-		w.line = append(w.line, ",ground_m_s2"...)
+		b = append(b, ",ground_m_s2"...)
 	case excitation.Force:
-		w.line = append(w.line, ",applied_N"...)
+		b = append(b, ",applied_N"...)
 	}
 	for _, c := range channels {
 		for _, column := range []string{".target_m", ".command_m", ".measured_m", ".force_N"} {
-			w.line = append(append(append(w.line, ','), c...), column...)
+			b = append(append(append(b, ','), c...), column...)
 		}
 	}
-	w.line = append(w.line, ",energy_margin\n"...)
-	w.out.Write(w.line) //nolint:errcheck // bufio keeps the error for the next flush
+	w.rows = append(b, ",energy_margin\n"...)
 }
 
 // Row writes the loop as it stands now. It fits Lane.Observe.
 func (w *Writer) Row(l *rtloop.Loop) error {
-	b := strconv.AppendFloat(w.line[:0], l.Time(), 'g', -1, 64)
+	b := strconv.AppendFloat(w.rows, l.Time(), 'g', -1, 64)
 	if w.drives != excitation.Target {
 		b = number(b, l.Excitation())
 	}
@@ -110,40 +108,39 @@ func (w *Writer) Row(l *rtloop.Loop) error {
 	if m := l.Margin(); !math.IsNaN(m) {
 		b = strconv.AppendFloat(b, m, 'g', -1, 64)
 	}
-	w.line = append(b, '\n')
-	if _, err := w.out.Write(w.line); err != nil {
-		return fmt.Errorf("log: %w", err)
+	w.rows = append(b, '\n')
+	if len(w.rows) < bufferSize && time.Since(w.flushed) < flushEvery {
+		return nil
 	}
-	return w.flushInTime()
+	return w.flush()
 }
 
 func number(b []byte, v float64) []byte {
 	return strconv.AppendFloat(append(b, ','), v, 'g', -1, 64)
 }
 
-// flushInTime flushes once a second. The clock is asked only now and then;
-// a loop at its real rate makes so many rows in a fraction of a second.
-func (w *Writer) flushInTime() error {
-	if w.rows++; w.rows%64 != 0 {
-		return nil
-	}
-	if now := time.Now(); now.Sub(w.flushed) > flushEvery {
-		w.flushed = now
-		if err := w.out.Flush(); err != nil {
-			return fmt.Errorf("log: %w", err)
+// flush writes what has gathered. What did not fit, on a full disk, is cut off
+// behind the last whole row.
+func (w *Writer) flush() error {
+	w.flushed = time.Now()
+	if w.err == nil {
+		n, err := w.file.Write(w.rows)
+		if err != nil {
+			whole := bytes.LastIndexByte(w.rows[:n], '\n') + 1
+			w.file.Truncate(w.written + int64(whole)) //nolint:errcheck // the first error counts
+			w.err = fmt.Errorf("log: %w", err)
 		}
+		w.written += int64(n)
 	}
-	return nil
+	w.rows = w.rows[:0]
+	return w.err
 }
 
-// Close flushes what is left and closes the file.
+// Close writes what is left and closes the file.
 func (w *Writer) Close() error {
-	err := w.out.Flush()
-	if e := w.file.Close(); err == nil {
-		err = e
+	err := w.flush()
+	if e := w.file.Close(); err == nil && e != nil {
+		err = fmt.Errorf("log: %w", e)
 	}
-	if err != nil {
-		return fmt.Errorf("log: %w", err)
-	}
-	return nil
+	return err
 }

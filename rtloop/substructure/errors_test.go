@@ -117,6 +117,20 @@ func TestIntegratorsRefused(t *testing.T) {
 		_, err := New("CR", s, dt)
 		refused(t, err, fmt.Sprintf("integrator: the step must be above 0 s, is %v", dt))
 	}
+	for _, c := range []struct {
+		name, setting string
+		value         float64
+		want          string
+	}{
+		{"KR-alpha", "rho_infinity", 1.1, "rho_infinity: 1.1 is above 1; allowed is a plain number, 0 to 1"},
+		{"KR-alpha", "rho_infinity", math.NaN(), "rho_infinity: NaN is no finite number; allowed is a plain number, 0 to 1"},
+		{"alpha-OS", "alpha", 0.05, "alpha: 0.05 is above 0; allowed is a plain number, -0.333333 to 0"},
+		{"alpha-OS", "alpha", -0.5, "alpha: -0.5 is below -0.333333; allowed is a plain number, -0.333333 to 0"},
+		{"CR", "alpha", 0, `unknown setting of CR "alpha" (none exists)`},
+	} {
+		_, err := NewWith(c.name, s, 0.01, kind.Values{c.setting: kind.Num(c.value)})
+		refused(t, err, "integrator: "+c.name+": "+c.want)
+	}
 	_, err := New("newmark", s, 0.01)
 	var unknown *kind.UnknownError
 	if !errors.As(err, &unknown) || unknown.Got != "newmark" || !slices.Equal(unknown.Known, Names()) {

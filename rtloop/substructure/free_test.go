@@ -10,6 +10,8 @@ import (
 //
 //	newmark-explicit: φ·cos(kθ),                θ = 2 asin(ω·dt/2)
 //	CR:               φ·cos((k+½)θ)/cos(θ/2),   θ = 2 atan(ω·dt/2)
+//	KR-alpha, ρ∞ = 1: the same
+//	alpha-OS, α = 0:  φ·cos(kθ),                θ = 2 atan(ω·dt/2)
 //
 // after k steps: the solution of x₊ − 2cosθ·x + x₋ = 0 that the first step of
 // each method begins. Both frequencies are closed forms of these methods.
@@ -22,9 +24,17 @@ func crFree(w, dt float64, k int) float64 {
 	return math.Cos((float64(k)+0.5)*theta) / math.Cos(theta/2)
 }
 
+func averageFree(w, dt float64, k int) float64 {
+	return math.Cos(float64(k) * 2 * math.Atan(w*dt/2))
+}
+
+var free = map[method]func(w, dt float64, k int) float64{
+	{"newmark-explicit", 0}: newmarkFree, {"CR", 0}: crFree, {"KR-alpha", 1}: crFree, {"alpha-OS", 0}: averageFree,
+}
+
 // release follows level 1 of a free structure without damping.
-func release(t *testing.T, name string, s *Structure, dt float64, x0 []float64, steps int) []float64 {
-	in := mustNew(t, name, s, dt)
+func release(t *testing.T, m method, s *Structure, dt float64, x0 []float64, steps int) []float64 {
+	in := m.build(t, s, dt)
 	p := make([]float64, s.N())
 	in.Start(x0, p)
 	x := []float64{in.X()[0]}
@@ -40,25 +50,22 @@ func TestFreeVibrationFrequency(t *testing.T) {
 	const period = 0.5
 	const w = 2 * math.Pi / period
 	s := mustStoreys(t, []Storey{{Mass: 50e3, Stiffness: 50e3 * w * w}}, Damping{})
-	for _, c := range []struct {
-		name  string
-		want  func(w, dt float64, k int) float64
-		steps []float64 // dt/T
-	}{
-		{"newmark-explicit", newmarkFree, []float64{0.001, 0.01, 0.1, 0.2, 0.3, 0.999 / math.Pi}},
-		{"CR", crFree, []float64{0.001, 0.01, 0.1, 0.3, 1, 3, 10}},
-	} {
-		for _, ratio := range c.steps {
+	for m, closed := range free {
+		steps := []float64{0.001, 0.01, 0.1, 0.3, 1, 3, 10} // dt/T
+		if m.name == "newmark-explicit" {
+			steps = []float64{0.001, 0.01, 0.1, 0.2, 0.3, 0.999 / math.Pi}
+		}
+		for _, ratio := range steps {
 			dt := ratio * period
-			x := release(t, c.name, s, dt, []float64{0.02}, 5000)
+			x := release(t, m, s, dt, []float64{0.02}, 5000)
 			for k, got := range x {
 				// Rounding of each step turns into drift: some k·1e-16 in
 				// phase, more where θ is small, over the swing of the mode,
-				// which for CR is √(1+(ω·dt/2)²) of the start.
+				// which for CR and KR-alpha is √(1+(ω·dt/2)²) of the start.
 				swing := 0.02 * math.Hypot(1, w*dt/2)
-				want := 0.02 * c.want(w, dt, k)
+				want := 0.02 * closed(w, dt, k)
 				if math.Abs(got-want) > 1e-9*swing {
-					t.Errorf("%s, dt = %.4g T, step %d: x = %.12g, want %.12g", c.name, ratio, k, got, want)
+					t.Errorf("%s, dt = %.4g T, step %d: x = %.12g, want %.12g", m, ratio, k, got, want)
 					break
 				}
 			}
@@ -71,7 +78,7 @@ func TestNewmarkExplicitGrowsBeyondItsLimit(t *testing.T) {
 	const w = 4 * math.Pi
 	dt := 1.001 * 2 / w
 	s := mustStoreys(t, []Storey{{Mass: 50e3, Stiffness: 50e3 * w * w}}, Damping{})
-	x := release(t, "newmark-explicit", s, dt, []float64{1}, 200)
+	x := release(t, method{name: "newmark-explicit"}, s, dt, []float64{1}, 200)
 	mu := math.Acosh(w*w*dt*dt/2 - 1)
 	for k, got := range x {
 		want := math.Cosh(float64(k) * mu)
@@ -93,19 +100,19 @@ func TestModesOfABuildingSwingAlone(t *testing.T) {
 		{Mass: 40e3, Stiffness: 12e6}, {Mass: 30e3, Stiffness: 12e6},
 	}, Damping{}, Attachment{From: 1, To: 2, Stiffness: 6e6})
 	const dt = 0.01
-	for name, want := range map[string]func(w, dt float64, k int) float64{"newmark-explicit": newmarkFree, "CR": crFree} {
+	for m, want := range free {
 		for mode, w := range s.Frequencies() {
 			x0 := make([]float64, s.N())
 			for i := range x0 {
 				x0[i] = s.Shapes().At(i, mode)
 			}
-			in := mustNew(t, name, s, dt)
+			in := m.build(t, s, dt)
 			l := newLoaded(s, in, 6e6)
 			s.AddForce(l.p, 0, 6e6*s.Project(x0, 0))
 			in.Start(x0, l.p)
 			for k := range 500 {
 				for i, x := range in.X() {
-					near(t, fmt.Sprintf("%s mode %d step %d level %d", name, mode+1, k, i+1),
+					near(t, fmt.Sprintf("%s mode %d step %d level %d", m, mode+1, k, i+1),
 						x, x0[i]*want(w, dt, k), 1e-10*peak(x0)) // rounding over 500 steps
 				}
 				if t.Failed() {

@@ -6,6 +6,8 @@ import (
 	"os"
 	"strconv"
 	"testing"
+
+	"antelag/scenarios/kind"
 )
 
 func mustStoreys(tb testing.TB, storeys []Storey, d Damping, at ...Attachment) *Structure {
@@ -25,6 +27,41 @@ func mustNew(tb testing.TB, name string, s *Structure, dt float64) Integrator {
 	}
 	return in
 }
+
+// method is an integrator with its own setting, if it has one.
+type method struct {
+	name    string
+	setting float64
+}
+
+func (m method) String() string {
+	if s := m.settings(); s != nil {
+		return m.name + " " + strconv.FormatFloat(m.setting, 'g', 3, 64)
+	}
+	return m.name
+}
+
+func (m method) settings() kind.Values {
+	switch m.name {
+	case "KR-alpha":
+		return kind.Values{"rho_infinity": kind.Num(m.setting)}
+	case "alpha-OS":
+		return kind.Values{"alpha": kind.Num(m.setting)}
+	}
+	return nil
+}
+
+func (m method) build(tb testing.TB, s *Structure, dt float64) Integrator {
+	tb.Helper()
+	in, err := NewWith(m.name, s, dt, m.settings())
+	if err != nil {
+		tb.Fatal(err)
+	}
+	return in
+}
+
+// undissipative are all methods, set to no numerical damping.
+var undissipative = []method{{"newmark-explicit", 0}, {"CR", 0}, {"KR-alpha", 1}, {"alpha-OS", 0}}
 
 // columns reads a CSV of numbers into its columns by name.
 func columns(tb testing.TB, file string) map[string][]float64 {

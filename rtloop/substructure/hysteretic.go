@@ -16,6 +16,9 @@ type hystereticStorey struct {
 	stiffness, yield, hardening float64
 }
 
+// Yields reports whether any storey is hysteretic.
+func (s *Structure) Yields() bool { return len(s.storeys) > 0 }
+
 // hystereticStoreys are the storeys of one integrator that yield.
 type hystereticStoreys []struct {
 	joint

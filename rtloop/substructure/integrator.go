@@ -27,10 +27,17 @@ type Integrator interface {
 	// Hysteretic storeys start at x0 as if moved there slowly.
 	Start(x0, p []float64)
 	// SetState puts the structure into a state as it is after Correct, to see
-	// what becomes of it. Of a linear structure the methods newmark-explicit
-	// and CR remember x, v, a and no more. Hysteretic storeys start at x as if
-	// moved there slowly.
+	// what becomes of it. Hysteretic storeys start at x as if moved there
+	// slowly; Memory becomes what it is under no load, with specimens of their
+	// initial stiffness.
 	SetState(x, v, a []float64)
+	// Memory is what the method carries from t_k to t_{k+1} beside x, v, a and
+	// the hysteretic storeys; nil where that is nothing. It is one slice for the
+	// life of the integrator and the only one that may be written, after
+	// SetState: to copy it from another integrator of the same method takes up
+	// a run to the last bit. With x, v, a it is the whole state of a linear
+	// structure.
+	Memory() []float64
 	// Predict moves on from x_k, v_k, a_k: X becomes the displacements at
 	// t_{k+1}, V the velocities there as far as they are known; A remains a_k.
 	Predict()
@@ -62,7 +69,7 @@ type NewIntegrator func(s *Structure, dt float64, v kind.Values) (Integrator, er
 
 // Integrators is the table of integrators.
 var Integrators = kind.Table[NewIntegrator]{What: "integrator", Entries: []kind.Entry[NewIntegrator]{
-	newmarkExplicitKind, crKind,
+	newmarkExplicitKind, crKind, krAlphaKind, alphaOSKind,
 }}
 
 // Names lists the integrators.
@@ -71,6 +78,12 @@ func Names() []string { return Integrators.Names() }
 // New builds the integrator of that name, with the defaults of its settings,
 // for steps of dt, model seconds. It is at rest at zero, without load.
 func New(name string, s *Structure, dt float64) (Integrator, error) {
+	return NewWith(name, s, dt, nil)
+}
+
+// NewWith is New with settings of the integrator; those not given have their
+// defaults.
+func NewWith(name string, s *Structure, dt float64, given kind.Values) (Integrator, error) {
 	e, err := Integrators.Find(name)
 	if err != nil {
 		return nil, fmt.Errorf("integrator: %w", err)
@@ -78,7 +91,7 @@ func New(name string, s *Structure, dt float64) (Integrator, error) {
 	if !finite(dt) || dt <= 0 {
 		return nil, fmt.Errorf("integrator: the step must be above 0 s, is %v", dt)
 	}
-	v, err := e.Resolve(nil)
+	v, err := e.Resolve(given)
 	if err != nil {
 		return nil, fmt.Errorf("integrator: %s: %w", name, err)
 	}
@@ -118,6 +131,8 @@ func newState(s *Structure, dt float64) (state, error) {
 func (st *state) X() []float64 { return st.x }
 func (st *state) V() []float64 { return st.v }
 func (st *state) A() []float64 { return st.a }
+
+func (st *state) Memory() []float64 { return nil }
 
 func (st *state) Strain() float64 {
 	stored, _ := st.yielding.energy()

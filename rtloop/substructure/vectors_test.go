@@ -2,35 +2,46 @@ package substructure
 
 import (
 	"fmt"
+	"maps"
 	"math"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
 )
 
-// The textbook forms of both methods, written in NumPy, under the same
+// The textbook forms of all methods, written in NumPy, under the same
 // motion, with a spring specimen fed back.
 func TestAgainstNumPy(t *testing.T) {
 	c := columns(t, "testdata/three_storeys.csv")
+	maps.Copy(c, columns(t, "testdata/three_storeys_weighted.csv"))
 	const several = 4
 	ground := interpolated(c["ground_m_s2"], several)
 	s, spring := threeStoreys(t)
-	for name, prefix := range map[string]string{"newmark-explicit": "newmark", "CR": "cr"} {
-		l := newLoaded(s, mustNew(t, name, s, knot/several), spring)
+	for m, prefix := range map[method]string{
+		{"newmark-explicit", 0}: "newmark", {"CR", 0}: "cr", {"KR-alpha", 0.5}: "kr50", {"KR-alpha", 1}: "kr100",
+		{"alpha-OS", -0.05}: "os05", {"alpha-OS", -1.0 / 3}: "os33",
+	} {
+		l := newLoaded(s, m.build(t, s, knot/several), spring)
+		sent := make([]float64, 3)
 		for k, ug := range ground {
 			if k == 0 {
 				l.start(ug)
 			} else {
-				l.step(ug)
+				l.in.Predict()
+				copy(sent, l.in.X())
+				l.in.Correct(l.load(ug))
 			}
 			if k%several != 0 {
 				continue
 			}
 			for i := range 3 {
+				if want := c[fmt.Sprintf("%s.t%d", prefix, i+1)]; want != nil { // the predictor
+					near(t, fmt.Sprintf("%s target %d step %d", m, i+1, k), sent[i], want[k/several], 1e-12*peak(want))
+				}
 				for letter, got := range map[string]float64{"x": l.in.X()[i], "v": l.in.V()[i], "a": l.in.A()[i]} {
 					want := c[fmt.Sprintf("%s.%s%d", prefix, letter, i+1)]
 					// Rounding of 512 steps in another order of operations.
-					near(t, fmt.Sprintf("%s %s%d step %d", name, letter, i+1, k), got, want[k/several], 1e-12*peak(want))
+					near(t, fmt.Sprintf("%s %s%d step %d", m, letter, i+1, k), got, want[k/several], 1e-12*peak(want))
 				}
 			}
 		}
@@ -61,7 +72,7 @@ func missed(t *testing.T, name string, s *Structure, spring float64, motion []fl
 // Against SciPy's lsim, which is exact for these motions, and against solve_ivp
 // for a building whose lower storey yields (seven yield drifts at the peak).
 // From 8 to 64 steps to a knot the error falls to 1/64: second order. Where
-// the load jumps at t = 0, CR is of first order, and falls to 1/8.
+// the load jumps at t = 0, CR and KR-alpha are of first order, and fall to 1/8.
 func TestOrderAgainstSciPy(t *testing.T) {
 	linear, spring := threeStoreys(t)
 	yielding := twoYielding(t)
@@ -85,6 +96,12 @@ func TestOrderAgainstSciPy(t *testing.T) {
 		{"load jumps", "newmark-explicit", linear, spring, three["ground_m_s2"], three, "exact.", 64, 0.03, 1e-5},
 		{"load jumps", "CR", linear, spring, three["ground_m_s2"], three, "exact.", 8, 0.03, 3e-4},
 		// The kinks of a storey that yields come anywhere in a step.
+		{"linear", "KR-alpha", linear, spring, quiet, three, "quiet.", 64, 0.03, 1e-5},
+		{"linear", "alpha-OS", linear, spring, quiet, three, "quiet.", 64, 0.03, 2e-5},
+		{"load jumps", "KR-alpha", linear, spring, three["ground_m_s2"], three, "exact.", 8, 0.03, 3e-4},
+		{"load jumps", "alpha-OS", linear, spring, three["ground_m_s2"], three, "exact.", 64, 0.03, 2e-5},
+		{"yielding", "KR-alpha", yielding, 0, two["ground_m_s2"], two, "", 64, 0.3, 1e-4},
+		{"yielding", "alpha-OS", yielding, 0, two["ground_m_s2"], two, "", 64, 0.3, 1e-4},
 		{"yielding", "newmark-explicit", yielding, 0, two["ground_m_s2"], two, "", 64, 0.3, 1e-5},
 		{"yielding", "CR", yielding, 0, two["ground_m_s2"], two, "", 64, 0.3, 1e-4},
 	} {

@@ -3,33 +3,39 @@ package accept
 import (
 	"fmt"
 	"io"
-	"math"
+	"slices"
 	"strings"
 	"text/tabwriter"
+	"unicode"
 
 	"antelag/rtloop"
+	"antelag/scenarios"
+	"antelag/scenarios/kind"
 	"antelag/scenarios/quantity"
 )
 
 // labels say what each acceptance limit judges.
 var labels = map[string]string{
-	"nrmse":          "tracking error, rms / rms target",
-	"delay":          "remaining delay (late +, early −)",
-	"peak_error":     "largest tracking error",
-	"energy_margin":  "energy margin, smallest",
-	"response_error": "response error, rms / rms reference",
+	"nrmse":          "tracking error, rms",
+	"delay":          "delay",
+	"peak_error":     "tracking error, peak",
+	"energy_margin":  "energy margin, least",
+	"response_error": "response error, rms",
+	"spectrum_error": "spectrum error, rms",
 }
 
 // WriteText writes the verdict for people. With colour, the words that decide
 // are coloured too; they decide without it just as well.
 func (v *Verdict) WriteText(w io.Writer, colour bool) error {
 	p := &page{colour: colour}
-	p.printf("%s: %s\n", v.Scenario, v.Title)
-	p.printf("%s\n", v.conditions())
 	first := &v.Lanes[0]
-	p.printf("\n%s  %s lane%s\n", p.word(first.Pass), first.Name, outcomeText(first, v.Time))
+	p.printf("%s: %s\n", printable(v.Scenario), printable(v.Title))
+	p.printf("%s\n", v.conditions())
+	p.printf("\n%s  %s lane: %s\n", p.word(first.Pass), first.Name, ending(first, v.Time))
 	p.limits(first)
-	p.channels(first)
+	p.tracking(first, v.Scene)
+	p.reach(first, v.Scene)
+	p.response(first)
 	p.energy(first)
 	if len(v.Lanes) > 1 {
 		p.compare(v.Lanes)
@@ -38,42 +44,70 @@ func (v *Verdict) WriteText(w io.Writer, colour bool) error {
 	return err
 }
 
+// printable keeps what a file gave for a name from moving the cursor.
+func printable(s string) string {
+	return strings.Map(func(r rune) rune {
+		if unicode.IsPrint(r) {
+			return r
+		}
+		return ' '
+	}, s)
+}
+
 func (v *Verdict) conditions() string {
 	pace := "at real speed"
 	if v.Slowdown != 1 {
 		pace = "slowed down " + quantity.Short(v.Slowdown, quantity.None) + " times"
 	}
-	return fmt.Sprintf("%s of test %s, %s a second, %d ticks, computed in %s",
-		quantity.Short(v.Time, quantity.Time), pace, plural(v.Rate, "tick"), v.Ticks,
+	return fmt.Sprintf("%s of test %s, %s ticks a second, %d ticks, computed in %s",
+		quantity.Short(v.Time, quantity.Time), pace, quantity.Short(v.Rate, quantity.None), v.Ticks,
 		quantity.Format(v.Compute.Wall, quantity.Time))
 }
 
-func plural(n float64, what string) string {
-	return quantity.Short(n, quantity.None) + " " + what + "s"
-}
-
-// outcomeText says how the lane ended, where it did not just complete.
-func outcomeText(l *Lane, whole float64) string {
+// ending says how the lane ended and what became of its limits.
+func ending(l *Lane, whole float64) string {
 	switch l.Outcome {
 	case rtloop.Completed:
-		return ""
-	case rtloop.Interrupted:
-		return ": interrupted; the figures are of what ran"
+		return "completed, " + tally(l)
+	case rtloop.Tripped, rtloop.Diverged:
+		return stopped(l.Outcome, l.Trip, whole)
 	}
-	t := l.Trip
+	return fmt.Sprintf("%s after %s of %s; the figures are of what ran", strings.ToUpper(l.Outcome.String()),
+		seconds(l.Ran), quantity.Short(whole, quantity.Time))
+}
+
+func tally(l *Lane) string {
+	failed, all := len(failures(l)), len(l.Accept)
+	switch {
+	case all == 0:
+		return "no acceptance limits given"
+	case failed == 0:
+		return fmt.Sprintf("limits met: %d of %d", all, all)
+	}
+	return fmt.Sprintf("limits failed: %d of %d", failed, all)
+}
+
+// stopped says which limit ended the lane.
+func stopped(o rtloop.Outcome, t *rtloop.Trip, whole float64) string {
 	dim := quantity.Length
-	switch t.Limit {
-	case "velocity":
+	switch {
+	case strings.HasSuffix(t.Limit, "velocity"):
 		dim = quantity.Velocity
-	case "force":
+	case strings.HasSuffix(t.Limit, "force"):
 		dim = quantity.Force
 	}
-	how := fmt.Sprintf(": TRIPPED at %s of %s", quantity.Format(t.Time, quantity.Time), quantity.Short(whole, quantity.Time))
-	if l.Outcome == rtloop.Diverged {
-		how = fmt.Sprintf(": DIVERGED at %s", quantity.Format(t.Time, quantity.Time))
+	where := t.Limit
+	if t.Channel != "" {
+		where = "channel " + t.Channel + ": " + t.Limit
 	}
-	return fmt.Sprintf("%s, channel %s: %s %s, allowed %s", how, t.Channel, t.Limit,
-		quantity.Format(float64(t.Value), dim), quantity.Short(float64(t.Allowed), dim))
+	at := fmt.Sprintf("%s at %s of %s, %s", strings.ToUpper(o.String()), seconds(t.Time), quantity.Short(whole, quantity.Time), where)
+	switch {
+	case !t.Value.Defined():
+		return at + " is no number any more"
+	case o == rtloop.Diverged:
+		return at + " is " + quantity.Format(float64(t.Value), dim)
+	}
+	return fmt.Sprintf("%s %s, allowed %s", at, quantity.Format(float64(t.Value), dim), quantity.Short(float64(t.Allowed), dim))
 }
 
 // page builds the text.
@@ -96,111 +130,190 @@ func (p *page) word(pass bool) string {
 	return "\x1b[" + code + "m" + word + "\x1b[0m"
 }
 
-// table lines its rows up in columns; cells are separated by tabs. The last
-// column may hold colour: its width does not matter.
-func (p *page) table(rows func(io.Writer)) {
-	t := tabwriter.NewWriter(p, 0, 0, 2, ' ', 0)
-	rows(t)
+// table writes a blank line and then rows of cells in columns, the headings
+// first. Each row but the headings may have a mark in front, which may hold
+// colour.
+func (p *page) table(rows [][]string, marks []string) {
+	var text strings.Builder
+	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
+	for _, row := range rows {
+		fmt.Fprintln(t, strings.Join(row, "\t"))
+	}
 	t.Flush() //nolint:errcheck // a Builder does not fail
+	p.printf("\n")
+	for i, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
+		mark := ""
+		switch {
+		case len(marks) == 0:
+		case i == 0:
+			mark = strings.Repeat(" ", len("PASS  "))
+		default:
+			mark = marks[i-1] + "  "
+		}
+		p.printf("  %s%s\n", mark, strings.TrimRight(line, " "))
+	}
 }
 
+// limits shows each acceptance limit, what was found and what room is left.
 func (p *page) limits(l *Lane) {
 	if len(l.Accept) == 0 {
-		p.printf("no acceptance limits given; only a completed run was asked for\n")
 		return
 	}
-	p.table(func(w io.Writer) {
-		fmt.Fprintf(w, "  acceptance\tfound\tlimit\troom\t\n")
-		for _, j := range l.Accept {
-			channel := ""
-			if j.Channel != "" && len(l.Channels) > 1 {
-				channel = " (" + j.Channel + ")"
-			}
-			sign := "≤"
-			if j.Limit == "energy_margin" {
-				sign = "≥"
-			}
-			fmt.Fprintf(w, "  %s%s\t%s\t%s %s\t%s\t%s\n", labels[j.Limit], channel,
-				quantity.Format(float64(j.Got), j.Dim), sign, quantity.Short(j.Want, j.Dim), j.room(), p.word(j.Pass))
+	several := len(l.Channels) > 1
+	rows, marks := [][]string{{"limit", "found", "allowed", "room"}}, []string{}
+	if several {
+		rows[0] = append(rows[0], "worst channel")
+	}
+	for _, j := range l.Accept {
+		row := []string{labels[j.Limit], j.found(), j.allowed(), j.room()}
+		if several && j.Channel != "" {
+			row = append(row, j.Channel)
 		}
-	})
+		rows, marks = append(rows, row), append(marks, p.word(j.Pass))
+	}
+	p.table(rows, marks)
 }
 
-// room says how far the figure is from its limit, in parts of the limit.
-func (j *Judgement) room() string {
-	if !j.Got.Defined() {
-		return "not defined"
+// tracking shows how well each channel followed its target.
+func (p *page) tracking(l *Lane, scene *scenarios.Scenario) {
+	rows := [][]string{{"channel", "compensator", "delay", "amplitude", "error, rms", "error, peak"}}
+	for i, c := range l.Channels {
+		rows = append(rows, []string{c.Name, c.Compensator, late(c.Delay), amplitude(c.AmplitudeRatio), share(c.NRMSE),
+			within(c.PeakError, quantity.Length, limit(scene, i, "error"))})
 	}
-	got := float64(j.Got)
-	if j.Limit == "energy_margin" {
-		return fmt.Sprintf("%+.2f", got-j.Want)
-	}
-	if j.Want == 0 {
-		return "–"
-	}
-	share := 100 * (1 - math.Abs(got)/j.Want)
-	if share < 0 {
-		return fmt.Sprintf("%.3g times over", math.Abs(got)/j.Want)
-	}
-	return fmt.Sprintf("%.0f %% left", share)
+	p.table(rows, nil)
 }
 
-func (p *page) channels(l *Lane) {
-	p.printf("\n")
-	p.table(func(w io.Writer) {
-		fmt.Fprintf(w, "  channel\tcompensator\tNRMSE\tdelay\tamplitude\tpeak target\tpeak command\tpeak velocity\tpeak force\n")
-		for _, c := range l.Channels {
-			fmt.Fprintf(w, "  %s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\n", c.Name, c.Compensator,
-				plain(c.NRMSE), show(c.Delay, quantity.Time), plain(c.AmplitudeRatio), show(c.PeakTarget, quantity.Length),
-				show(c.PeakCommand, quantity.Length), show(c.PeakVelocity, quantity.Velocity), show(c.PeakForce, quantity.Force))
+// reach shows how far each channel went, and how far it was allowed to before
+// the loop trips.
+func (p *page) reach(l *Lane, scene *scenarios.Scenario) {
+	rows := [][]string{{"channel", "peak target", "peak command", "peak velocity", "peak force"}}
+	for i, c := range l.Channels {
+		rows = append(rows, []string{c.Name,
+			within(c.PeakTarget, quantity.Length, nil),
+			within(c.PeakCommand, quantity.Length, limit(scene, i, "stroke")),
+			within(c.PeakVelocity, quantity.Velocity, limit(scene, i, "velocity")),
+			within(c.PeakForce, quantity.Force, limit(scene, i, "force"))})
+	}
+	p.table(rows, nil)
+}
+
+// response shows, for a driven target, how measured answers target at each
+// frequency: the frequency response of compensator and actuator together.
+func (p *page) response(l *Lane) {
+	for _, c := range l.Channels {
+		if len(c.Response) == 0 {
+			continue
 		}
-	})
+		rows := [][]string{{"channel", "frequency", "amplitude", "delay"}}
+		for _, b := range c.Response {
+			rows = append(rows, []string{c.Name, quantity.Format(float64(b.Frequency), quantity.Frequency), amplitude(b.Amplitude), late(b.Delay)})
+		}
+		p.table(rows, nil)
+	}
 }
 
-func show(f rtloop.Figure, dim quantity.Dim) string { return quantity.Format(float64(f), dim) }
+// limit finds a trip limit of a channel, nil where there is none.
+func limit(scene *scenarios.Scenario, channel int, name string) *kind.Value {
+	if scene == nil || channel >= len(scene.Channels) {
+		return nil
+	}
+	if v, ok := scene.Channels[channel].Limits[name]; ok {
+		return &v
+	}
+	return nil
+}
 
-func plain(f rtloop.Figure) string { return show(f, quantity.None) }
-
+// energy shows the margin, the damping that the tracking error looks like, and
+// the balance of the whole run, in one unit so that it can be added up.
 func (p *page) energy(l *Lane) {
 	e := l.Energy
 	if !e.Input.Defined() {
 		return
 	}
-	p.printf("\n  energy  margin %s at the end, over %s; added damping %s of critical\n",
-		plain(e.MarginFinal), show(e.Window, quantity.Time), percent(e.AddedDamping))
-	p.printf("          input %s = kinetic %s + strain %s + damped %s + specimens %s − injected %s (closes within %s)\n",
-		show(e.Input, quantity.Energy), show(e.Kinetic, quantity.Energy), show(e.Strain, quantity.Energy),
-		show(e.Damped, quantity.Energy), show(e.Specimen, quantity.Energy), show(e.Injected, quantity.Energy), percent(e.BalanceError))
-}
-
-func percent(f rtloop.Figure) string {
-	if !f.Defined() {
-		return "–"
+	window := quantity.Format(float64(e.Window), quantity.Time)
+	final := margin(e.MarginFinal) + " over"
+	if !e.MarginFinal.Defined() {
+		final = "undefined, too little was damped in"
 	}
-	return fmt.Sprintf("%.2g %%", 100*float64(f))
+	p.printf("\n  energy  margin at the end %s the last %s\n", final, window)
+	damping := share(e.AddedDamping) + " of critical"
+	if !e.AddedDamping.Defined() {
+		damping = "undefined"
+	}
+	p.printf("          added damping %s; the balance closes within %s\n", damping, strings.TrimPrefix(share(e.BalanceError), "< "))
+	in := sameUnit(e.Input, e.Kinetic, e.Strain, e.Damped, e.Specimen, e.Injected)
+	p.printf("          input %s = kinetic %s + strain %s + damped %s + specimens %s − injected %s\n",
+		in[0], in[1], in[2], in[3], in[4], in[5])
 }
 
-// compare ranks the lanes: passing before failing, then by what the test is
-// for, the error of the response, or else of the tracking.
+// compare ranks the lanes, best first. Columns that say nothing are left out:
+// energy and response where there is no structure, failures where there is none.
 func (p *page) compare(lanes []Lane) {
-	p.printf("\n")
-	p.table(func(w io.Writer) {
-		fmt.Fprintf(w, "  rank  lane\tcompensator\tended\tNRMSE\tdelay\tmargin, least\tresponse error\t\n")
-		for i, l := range Rank(lanes) {
-			worst := measure(l.LaneResult, "nrmse").Got
-			delay := measure(l.LaneResult, "delay").Got
-			fmt.Fprintf(w, "  %d     %s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\n", i+1, l.Name, methods(l), l.Outcome,
-				plain(worst), show(delay, quantity.Time), plain(l.Energy.MarginMin), plain(l.ResponseError), p.word(l.Pass))
+	structure, failed := false, false
+	for i := range lanes {
+		structure = structure || lanes[i].Energy.Input.Defined()
+		failed = failed || !lanes[i].Pass
+	}
+	row := func(first, energy []string, last string) []string {
+		if structure {
+			first = append(first, energy...)
 		}
-	})
+		if failed {
+			first = append(first, last)
+		}
+		return first
+	}
+	rows, marks := [][]string{row([]string{"lane", "compensator", "delay", "error, rms"},
+		[]string{"margin", "response"}, "failed")}, []string{}
+	for i, l := range Rank(lanes) {
+		rows = append(rows, row([]string{fmt.Sprintf("%d. %s", i+1, l.Name), methods(&l),
+			late(measure(l.LaneResult, "delay").Got), share(measure(l.LaneResult, "nrmse").Got)},
+			[]string{margin(l.Energy.MarginMin), share(l.ResponseError)}, trouble(&l)))
+		marks = append(marks, p.word(l.Pass))
+	}
+	p.table(rows, marks)
 }
 
-func methods(l Lane) string {
+// trouble says in a few words why a lane does not pass, "" if it does.
+func trouble(l *Lane) string {
+	switch l.Outcome {
+	case rtloop.Tripped:
+		return l.Trip.Limit + " at " + seconds(l.Trip.Time)
+	case rtloop.Diverged:
+		return "diverged at " + seconds(l.Trip.Time)
+	case rtloop.Completed:
+	default:
+		return l.Outcome.String()
+	}
+	failed := failures(l)
+	if len(failed) > 2 {
+		return fmt.Sprintf("%d of %d limits", len(failed), len(l.Accept))
+	}
+	return strings.Join(failed, ", ")
+}
+
+// failures names the acceptance limits that were not met.
+func failures(l *Lane) []string {
+	var out []string
+	for _, j := range l.Accept {
+		if !j.Pass {
+			out = append(out, j.Limit)
+		}
+	}
+	return out
+}
+
+// methods names the compensators of a lane, each once; of many only the first.
+func methods(l *Lane) string {
 	var out []string
 	for _, c := range l.Channels {
-		if len(out) == 0 || out[len(out)-1] != c.Compensator {
+		if !slices.Contains(out, c.Compensator) {
 			out = append(out, c.Compensator)
 		}
 	}
-	return strings.Join(out, ", ")
+	if text := strings.Join(out, ", "); len(out) < 2 || len(text) <= 24 {
+		return text
+	}
+	return fmt.Sprintf("%s +%d", out[0], len(out)-1)
 }

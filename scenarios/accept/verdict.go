@@ -33,6 +33,8 @@ type Lane struct {
 	rtloop.LaneResult
 	Accept []Judgement `json:"accept"`
 	Pass   bool        `json:"pass"`
+
+	Ran float64 `json:"ran_s"` // model seconds that it ran
 }
 
 // Judgement is one acceptance limit against what was found. Channel is the
@@ -84,11 +86,15 @@ func Run(ctx context.Context, s *scenarios.Scenario, o Options) (*Verdict, error
 		Scenario: s.Name, Title: s.Title, Ticks: rig.Ticks, Rate: s.Loop.Num("rate"), Slowdown: s.Loop.Num("slowdown"),
 		Step: rig.Step, Time: float64(rig.Ticks) * rig.Step, Drive: s.Excitation.Drives.Dim(), Scene: s,
 	}
-	for _, res := range rig.Results() {
-		v.Lanes = append(v.Lanes, judge(res, s.Accept))
+	ticks := int64(1)
+	for i, res := range rig.Results() {
+		lane := judge(res, s.Accept)
+		lane.Ran = rig.Lanes[i].Loop.Time()
+		v.Lanes = append(v.Lanes, lane)
+		ticks = max(ticks, rig.Lanes[i].Loop.Ticks())
 	}
 	v.Compute.Wall = time.Since(began).Seconds()
-	v.Compute.NsPerTick = v.Compute.Wall * 1e9 / float64(rig.Ticks)
+	v.Compute.NsPerTick = v.Compute.Wall * 1e9 / float64(ticks)
 	return v, err
 }
 
@@ -97,7 +103,7 @@ func Run(ctx context.Context, s *scenarios.Scenario, o Options) (*Verdict, error
 func (v *Verdict) Pass() bool { return v.Lanes[0].Pass }
 
 // limitNames are the acceptance limits in the order in which they are judged.
-var limitNames = []string{"nrmse", "delay", "peak_error", "energy_margin", "response_error"}
+var limitNames = []string{"nrmse", "delay", "peak_error", "energy_margin", "response_error", "spectrum_error"}
 
 // judge holds a lane's figures against the limits. A figure that is undefined
 // fails: what could not be measured was not met.
@@ -132,7 +138,7 @@ func measure(res rtloop.LaneResult, name string) Judgement {
 		return j
 	}
 	for i, c := range res.Channels {
-		got := map[string]rtloop.Figure{"nrmse": c.NRMSE, "delay": c.Delay, "peak_error": c.PeakError}[name]
+		got := map[string]rtloop.Figure{"nrmse": c.NRMSE, "delay": c.Delay, "peak_error": c.PeakError, "spectrum_error": c.SpectrumError}[name]
 		if i == 0 || j.Got.Defined() && !(math.Abs(float64(got)) <= math.Abs(float64(j.Got))) {
 			j.Got, j.Channel = got, c.Name
 		}

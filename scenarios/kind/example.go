@@ -2,6 +2,7 @@ package kind
 
 import (
 	"strconv"
+	"strings"
 
 	"antelag/scenarios/quantity"
 )
@@ -49,7 +50,21 @@ func (s *Setting) ExampleValue() (text string, ok bool) {
 		return typical[quantity.Acceleration], true
 	}
 	text, ok = typical[s.Dim]
-	return text, ok
+	return s.within(text), ok
+}
+
+// within is the typical value, or the end of the sensible range that it is
+// beyond.
+func (s *Setting) within(text string) string {
+	v, err := quantity.ParseAs(strings.Trim(text, `"`), s.Dim)
+	near := min(max(v, s.Min), s.Max)
+	if err != nil || near == v {
+		return text
+	}
+	if text = quantity.Plain(near, s.Dim); s.Dim != quantity.None {
+		text = strconv.Quote(text)
+	}
+	return text
 }
 
 // Sample gives the setting the value that examples show, as TOML; an optional

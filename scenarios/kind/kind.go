@@ -12,6 +12,7 @@ import (
 	"fmt"
 	"slices"
 	"strings"
+	"unicode/utf8"
 
 	"github.com/agnivade/levenshtein"
 )
@@ -132,16 +133,18 @@ func (e *UnknownError) Error() string {
 	return msg + " (known: " + strings.Join(e.Known, ", ") + ")"
 }
 
-// Nearest returns the known name that is closest to got by edit distance, or
-// that got is the beginning of, or "" when none is close enough to be a slip of
-// the pen.
+// Nearest returns the known name that got is the beginning of, or else the one
+// closest to it by edit distance, or "" when none is close enough to be a slip
+// of the pen: at most half of got may differ, of short names two letters, and
+// never all of them.
 func Nearest(got string, known []string) string {
 	for _, name := range known {
 		if len(got) > 2 && strings.HasPrefix(strings.ToLower(name), strings.ToLower(got)) {
 			return name
 		}
 	}
-	best, bestDistance := "", max(2, len(got)/2)+1
+	letters := utf8.RuneCountInString(got)
+	best, bestDistance := "", min(max(2, letters/2), letters-1)+1
 	for _, name := range known {
 		if d := levenshtein.ComputeDistance(strings.ToLower(got), strings.ToLower(name)); d < bestDistance {
 			best, bestDistance = name, d

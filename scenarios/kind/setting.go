@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strconv"
 	"strings"
 
 	"antelag/scenarios/quantity"
@@ -166,13 +167,21 @@ func (s *Setting) IsOptional() bool { return s.presence == optional }
 // IsRequired reports whether the setting must be given.
 func (s *Setting) IsRequired() bool { return s.presence == required }
 
-// In returns the setting with the driven dimension filled in.
+// In returns the setting with the driven dimension filled in, and with it a
+// range, unless the setting has one.
 func (s Setting) In(driven quantity.Dim) Setting {
 	if s.Driven {
 		s.Dim, s.Driven = driven, false
+		if largest, ok := largestDriven[driven]; ok && math.IsInf(s.Min, -1) && math.IsInf(s.Max, 1) {
+			s.Min, s.Max = -largest, largest
+		}
 	}
 	return s
 }
+
+// largestDriven is what no excitation of a test can sensibly exceed: a ground
+// acceleration of about 100 g, a force of 1 GN, a target of 10 m.
+var largestDriven = map[quantity.Dim]float64{quantity.Acceleration: 1000, quantity.Force: 1e9, quantity.Length: 10}
 
 func (s *Setting) missing(of string) error {
 	return fmt.Errorf("is missing; %s needs it: %s, %s", of, s.Doc, s.Allowed())
@@ -223,7 +232,21 @@ func (s *Setting) RangeText() string {
 
 // Format writes a number of this setting for people, in as few digits as
 // tell it apart.
-func (s *Setting) Format(v float64) string { return quantity.Short(v, s.Dim) }
+func (s *Setting) Format(v float64) string {
+	if s.Type == IntegerType {
+		return strconv.FormatFloat(v, 'f', -1, 64)
+	}
+	return quantity.Short(v, s.Dim)
+}
+
+// beyond writes a number that is outside a bound, in all its digits where few
+// would make the two look alike.
+func (s *Setting) beyond(v, bound float64) (string, string) {
+	if a, b := s.Format(v), s.Format(bound); a != b {
+		return a, b
+	}
+	return quantity.Exact(v, s.Dim), quantity.Exact(bound, s.Dim)
+}
 
 // FormatValue writes any value of this setting for people.
 func (s *Setting) FormatValue(v Value) string {
@@ -274,9 +297,11 @@ func (s *Setting) checkNum(v float64) error {
 	case s.Type == IntegerType && v != math.Trunc(v):
 		return fmt.Errorf("%v is not a whole number; allowed is %s", v, s.Allowed())
 	case v < s.Min:
-		return fmt.Errorf("%s is below %s; allowed is %s", s.Format(v), s.Format(s.Min), s.Allowed())
+		got, bound := s.beyond(v, s.Min)
+		return fmt.Errorf("%s is below %s; allowed is %s", got, bound, s.Allowed())
 	case v > s.Max:
-		return fmt.Errorf("%s is above %s; allowed is %s", s.Format(v), s.Format(s.Max), s.Allowed())
+		got, bound := s.beyond(v, s.Max)
+		return fmt.Errorf("%s is above %s; allowed is %s", got, bound, s.Allowed())
 	}
 	return nil
 }

@@ -1,0 +1,88 @@
+package substructure
+
+import (
+	"math"
+	"strings"
+	"testing"
+)
+
+// A structure held by one force on a level and let go: at the first instant only
+// that level accelerates. With the initial stiffness instead of what yielded the
+// others would too.
+func TestHeldIsInBalance(t *testing.T) {
+	storeys := []Storey{
+		{Mass: 10e3, Stiffness: 8e6, YieldDisplacement: 0.005, Hardening: 0.05},
+		{Mass: 10e3, Stiffness: 6e6},
+		{Mass: 8e3, Stiffness: 5e6, YieldDisplacement: 0.004, Hardening: 0.02},
+	}
+	at := []Attachment{{From: 0, To: 2, Stiffness: 2e6}, {From: 3, To: 1, Stiffness: 1e6}}
+	s, err := FromStoreys(storeys, Damping{Ratios: []float64{0.02}}, at)
+	if err != nil {
+		t.Fatal(err)
+	}
+	soft := func(j int, e float64) float64 { return at[j].Stiffness * 0.01 * math.Tanh(e/0.01) }
+	for level := 1; level <= 3; level++ {
+		x, err := s.Held(level, 0.06, soft)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if x[level-1] != 0.06 {
+			t.Errorf("level %d is held at %g m", level, x[level-1])
+		}
+		elastic, err := s.Static(level, 0.06)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if within(x, elastic, 1e-3) {
+			t.Errorf("held at level %d: nothing yielded, %v", level, x)
+		}
+		in, err := New("CR", s, 1.0/2048)
+		if err != nil {
+			t.Fatal(err)
+		}
+		p := make([]float64, 3)
+		for j := range at {
+			s.AddForce(p, j, soft(j, s.Project(x, j)))
+		}
+		in.Start(x, p)
+		for i, a := range in.A() {
+			// The correction stops at 1e-13 of 60 mm; with 8e6 N/m on 8 t that
+			// is 6e-12 m/s², summed over a few storeys.
+			if i != level-1 && math.Abs(a) > 1e-10 {
+				t.Errorf("held at level %d: level %d starts with %g m/s²", level, i+1, a)
+			}
+		}
+		if math.Abs(in.A()[level-1]) < 1 {
+			t.Errorf("level %d is not let go: %g m/s²", level, in.A()[level-1])
+		}
+	}
+}
+
+func within(a, b []float64, tolerance float64) bool {
+	for i := range a {
+		if math.Abs(a[i]-b[i]) > tolerance {
+			return false
+		}
+	}
+	return true
+}
+
+// Without anything that yields it is the elastic shape.
+func TestHeldElastic(t *testing.T) {
+	at := []Attachment{{From: 0, To: 2, Stiffness: 2e6}}
+	s, err := FromStoreys([]Storey{{Mass: 1e3, Stiffness: 8e6}, {Mass: 1e3, Stiffness: 6e6}, {Mass: 1e3, Stiffness: 5e6}}, Damping{}, at)
+	if err != nil {
+		t.Fatal(err)
+	}
+	want, err := s.Static(3, 0.05)
+	if err != nil {
+		t.Fatal(err)
+	}
+	got, err := s.Held(3, 0.05, func(_ int, e float64) float64 { return 2e6 * e })
+	if err != nil || !within(got, want, 1e-16) {
+		t.Errorf("%v, %v, want %v", got, err, want)
+	}
+	if _, err := s.Held(4, 0.05, nil); err == nil || !strings.Contains(err.Error(), "level: must be 1 to 3") {
+		t.Errorf("level 4: %v", err)
+	}
+}
