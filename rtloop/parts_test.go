@@ -14,9 +14,10 @@ import (
 
 // The parts that the tests of this package put together.
 
-func newCompensator(tb testing.TB, tick float64, name string, given kind.Values) compensator.Compensator {
+// newPart builds a kind of a table; call hands the builder what it needs.
+func newPart[B, T any](tb testing.TB, table *kind.Table[B], name string, given kind.Values, call func(B, kind.Values) (T, error)) T {
 	tb.Helper()
-	entry, err := compensator.Kinds.Find(name)
+	entry, err := table.Find(name)
 	if err != nil {
 		tb.Fatal(err)
 	}
@@ -24,45 +25,29 @@ func newCompensator(tb testing.TB, tick float64, name string, given kind.Values)
 	if err != nil {
 		tb.Fatal(err)
 	}
-	c, err := entry.New(tick, values)
+	part, err := call(entry.New, values)
 	if err != nil {
 		tb.Fatal(err)
 	}
-	return c
+	return part
+}
+
+func newCompensator(tb testing.TB, tick float64, name string, given kind.Values) compensator.Compensator {
+	tb.Helper()
+	return newPart(tb, &compensator.Kinds, name, given,
+		func(build compensator.New, v kind.Values) (compensator.Compensator, error) { return build(tick, v) })
 }
 
 func newActuator(tb testing.TB, timing plant.Timing, given kind.Values) plant.Actuator {
 	tb.Helper()
-	entry, err := plant.Actuators.Find("lag-delay")
-	if err != nil {
-		tb.Fatal(err)
-	}
-	values, err := entry.Resolve(given)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	a, err := entry.New(timing, values)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	return a
+	return newPart(tb, &plant.Actuators, "lag-delay", given,
+		func(build plant.NewActuator, v kind.Values) (plant.Actuator, error) { return build(timing, v) })
 }
 
 func newElement(tb testing.TB, name string, given kind.Values) plant.Element {
 	tb.Helper()
-	entry, err := plant.Elements.Find(name)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	values, err := entry.Resolve(given)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	e, err := entry.New(values)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	return e
+	return newPart(tb, &plant.Elements, name, given,
+		func(build plant.NewElement, v kind.Values) (plant.Element, error) { return build(v) })
 }
 
 // perfectChannel has neither lag nor noise nor compensator.

@@ -225,16 +225,32 @@ func TestInterruptAndObserveError(t *testing.T) {
 }
 
 func TestTickAllocatesNothing(t *testing.T) {
+	var cases []standard
+	for _, name := range compensator.Kinds.Names() {
+		cases = append(cases, standard{method: name})
+	}
+	for _, name := range plant.Actuators.Names() {
+		cases = append(cases, standard{actuator: name})
+	}
+	for _, name := range plant.Elements.Names() {
+		cases = append(cases, standard{element: name}, standard{element: name, actuator: "servo-hydraulic"})
+	}
+	for _, name := range substructure.Names() {
+		cases = append(cases, standard{integrator: name})
+	}
 	motion := standardMotion()
-	for _, method := range compensator.Kinds.Names() {
-		l := standardLoop(t, method, 1<<14)
+	for _, c := range cases {
+		l := c.loop(t, 1<<14)
 		l.Start(motion[0])
 		i := 0
-		if n := testing.AllocsPerRun(4000, func() {
+		if n := testing.AllocsPerRun(2000, func() {
 			i++
 			l.Tick(motion[i&(len(motion)-1)])
 		}); n != 0 {
-			t.Errorf("%s: %g allocations a tick", method, n)
+			t.Errorf("%+v: %g allocations a tick", c, n)
+		}
+		if l.Outcome() != Running {
+			t.Errorf("%+v: the loop %v: %+v", c, l.Outcome(), l.trip)
 		}
 	}
 }
