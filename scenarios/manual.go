@@ -38,19 +38,34 @@ func Chapters() []Chapter {
 // or of one kind.
 func WriteManual(w io.Writer, name string) error {
 	var out strings.Builder
-	known := []string{}
+	if err := lookUp(name,
+		func(c Chapter) { writeChapter(&out, c) },
+		func(c Chapter, k *kind.Kind) { writeKind(&out, c, k) }); err != nil {
+		return err
+	}
+	if name == "" {
+		out.WriteString("antelag describe KIND shows its equation and settings.\n")
+	}
+	_, err := io.WriteString(w, out.String())
+	return err
+}
+
+// lookUp finds what a name of the manual means: "" every chapter, else a
+// chapter, or the kinds of that name.
+func lookUp(name string, chapter func(Chapter), one func(Chapter, *kind.Kind)) error {
+	var known []string
 	found := name == ""
 	for _, c := range Chapters() {
 		known = append(known, c.Title)
 		if name == "" || name == c.Title {
 			found = true
-			writeChapter(&out, c)
+			chapter(c)
 		}
 		for _, k := range c.Kinds {
 			known = append(known, k.Name)
 			if name == k.Name {
 				found = true
-				writeKind(&out, c, k)
+				one(c, k)
 			}
 		}
 	}
@@ -58,11 +73,7 @@ func WriteManual(w io.Writer, name string) error {
 		slices.Sort(known)
 		return &kind.UnknownError{What: "kind or chapter", Got: name, Known: known}
 	}
-	if name == "" {
-		out.WriteString("antelag describe KIND shows its equation and settings.\n")
-	}
-	_, err := io.WriteString(w, out.String())
-	return err
+	return nil
 }
 
 func writeChapter(out *strings.Builder, c Chapter) {

@@ -7,7 +7,8 @@ import (
 )
 
 func newDescribe() *cobra.Command {
-	return &cobra.Command{
+	asJSON := false
+	cmd := &cobra.Command{
 		Use:   "describe [KIND]",
 		Short: "the manual of kinds and settings",
 		Args:  cobra.MaximumNArgs(1),
@@ -22,7 +23,17 @@ func newDescribe() *cobra.Command {
 			return names, cobra.ShellCompDirectiveNoFileComp
 		},
 		RunE: func(cmd *cobra.Command, args []string) error {
-			return scenarios.WriteManual(cmd.OutOrStdout(), append(args, "")[0])
+			name := append(args, "")[0]
+			if !asJSON {
+				return scenarios.WriteManual(cmd.OutOrStdout(), name)
+			}
+			entries, err := scenarios.Manual(name)
+			if err != nil {
+				return err
+			}
+			return writeJSON(cmd.OutOrStdout(), map[string]any{"kinds": entries})
 		},
 	}
+	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object instead")
+	return cmd
 }

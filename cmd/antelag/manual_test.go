@@ -1,6 +1,7 @@
 package main
 
 import (
+	"encoding/json"
 	"strings"
 	"testing"
 
@@ -125,4 +126,33 @@ func TestCompletion(t *testing.T) {
 			t.Errorf("antelag %s <tab> does not offer %q:\n%s", args, want, o.out)
 		}
 	}
+}
+
+// With --json the manual and the list are one object, and the bare command takes
+// the flags of run.
+func TestJSONEverywhere(t *testing.T) {
+	t.Parallel()
+	dir := t.TempDir()
+	for _, c := range []struct {
+		args []string
+		key  string
+		want string
+	}{
+		{[]string{"describe", "--json"}, "kinds", "adaptive-time-series"},
+		{[]string{"describe", "inverse", "--json"}, "kinds", "assumed delay"},
+		{[]string{"scenarios", "--json"}, "scenarios", "water tank"},
+		{[]string{"scenarios", "tank", "--json"}, "text", "bouc-wen"},
+		{[]string{"--json", "--set", "loop.duration=3 s"}, "lanes", "configured"},
+	} {
+		o := antelag(t, dir, c.args...).good(t)
+		var object map[string]json.RawMessage
+		d := json.NewDecoder(strings.NewReader(o.out))
+		if err := d.Decode(&object); err != nil || d.More() {
+			t.Errorf("%v: not one JSON object: %v", c.args, err)
+		}
+		if !strings.Contains(string(object[c.key]), c.want) {
+			t.Errorf("%v: %s does not hold %q", c.args, c.key, c.want)
+		}
+	}
+	antelag(t, dir, "describe", "nothing", "--json").refused(t, "nothing")
 }

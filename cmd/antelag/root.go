@@ -36,6 +36,7 @@ func newRoot() *cobra.Command {
 			return opts.run(cmd, []string{scenarios.Default})
 		},
 	}
+	opts.flags(root)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
 	root.AddCommand(newRun(), newScenarios(), newDescribe(), newVersion())
 	return root

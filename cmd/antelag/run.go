@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
@@ -12,7 +11,6 @@ import (
 	"time"
 
 	"github.com/spf13/cobra"
-	"golang.org/x/term"
 
 	"antelag/rtloop"
 	"antelag/rtloop/runlog"
@@ -48,13 +46,18 @@ file or the name of an embedded one. The configured lane decides the exit code:
 		ValidArgsFunction: completeScenario,
 		RunE:              o.run,
 	}
+	o.flags(cmd)
+	return cmd
+}
+
+// flags gives a command the flags of run.
+func (o *runOptions) flags(cmd *cobra.Command) {
 	f := cmd.Flags()
 	f.StringArrayVar(&o.sets, "set", nil, "change a setting, `PATH=VALUE`, like damper.compensator.delay=\"12 ms\"; may be repeated")
 	f.StringVar(&o.log, "log", "", "write every tick to this CSV `file`, with its provenance beside it")
 	f.StringVar(&o.logLane, "log-lane", scenarios.Configured, "the lane that --log writes")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
-	return cmd
 }
 
 func (o *runOptions) run(cmd *cobra.Command, args []string) error {
@@ -181,13 +184,11 @@ func sameFile(a, b string) bool {
 }
 
 func (o *runOptions) print(out io.Writer, verdicts []*accept.Verdict, several bool) error {
-	if o.json {
-		e := json.NewEncoder(out)
-		e.SetIndent("", " ")
-		if several {
-			return e.Encode(map[string]any{"runs": verdicts})
-		}
-		return e.Encode(verdicts[0])
+	switch {
+	case o.json && several:
+		return writeJSON(out, map[string]any{"runs": verdicts})
+	case o.json:
+		return writeJSON(out, verdicts[0])
 	}
 	for i, v := range verdicts {
 		if i > 0 {
@@ -198,10 +199,4 @@ func (o *runOptions) print(out io.Writer, verdicts []*accept.Verdict, several bo
 		}
 	}
 	return nil
-}
-
-// inColour reports whether stdout takes colours and nobody said no
-// (https://no-color.org).
-func inColour() bool {
-	return term.IsTerminal(int(os.Stdout.Fd())) && os.Getenv("NO_COLOR") == "" && os.Getenv("TERM") != "dumb"
 }

@@ -2,6 +2,7 @@ package main
 
 import (
 	"fmt"
+	"io"
 	"text/tabwriter"
 
 	"github.com/spf13/cobra"
@@ -10,31 +11,56 @@ import (
 )
 
 func newScenarios() *cobra.Command {
-	return &cobra.Command{
+	asJSON := false
+	cmd := &cobra.Command{
 		Use:               "scenarios [NAME]",
 		Short:             "list the embedded scenarios, or print one to start from",
 		Args:              cobra.MaximumNArgs(1),
 		ValidArgsFunction: completeScenario,
 		RunE: func(cmd *cobra.Command, args []string) error {
 			if len(args) == 1 {
-				text, err := scenarios.Text(args[0])
-				if err != nil {
-					return err
-				}
-				_, err = cmd.OutOrStdout().Write(text)
-				return err
+				return printScenario(cmd.OutOrStdout(), args[0], asJSON)
 			}
-			t := tabwriter.NewWriter(cmd.OutOrStdout(), 0, 0, 2, ' ', 0)
-			for _, name := range scenarios.Names() {
-				s, err := scenarios.Load(name)
-				if err != nil {
-					return err
-				}
-				fmt.Fprintf(t, "%s\t%s\n", name, s.Title)
-			}
-			return t.Flush()
+			return listScenarios(cmd.OutOrStdout(), asJSON)
 		},
 	}
+	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object instead")
+	return cmd
+}
+
+func printScenario(out io.Writer, name string, asJSON bool) error {
+	text, err := scenarios.Text(name)
+	if err != nil {
+		return err
+	}
+	if asJSON {
+		return writeJSON(out, map[string]string{"name": name, "text": string(text)})
+	}
+	_, err = out.Write(text)
+	return err
+}
+
+func listScenarios(out io.Writer, asJSON bool) error {
+	type item struct {
+		Name  string `json:"name"`
+		Title string `json:"title"`
+	}
+	var items []item
+	for _, name := range scenarios.Names() {
+		s, err := scenarios.Load(name)
+		if err != nil {
+			return err
+		}
+		items = append(items, item{name, s.Title})
+	}
+	if asJSON {
+		return writeJSON(out, map[string]any{"scenarios": items})
+	}
+	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
+	for _, i := range items {
+		fmt.Fprintf(t, "%s\t%s\n", i.Name, i.Title)
+	}
+	return t.Flush()
 }
 
 // completeScenario offers the embedded scenarios beside files.

@@ -216,6 +216,12 @@ func (s *Setting) Allowed() string {
 	return what
 }
 
+// HasRange reports whether the setting has a smallest and a largest value.
+func (s *Setting) HasRange() bool {
+	return (s.Type == NumberType || s.Type == IntegerType || s.Type == ListType || s.Type == MatrixType) &&
+		!math.IsInf(s.Min, -1) && !math.IsInf(s.Max, 1)
+}
+
 // RangeText says the sensible range in words, or "" where there is none.
 func (s *Setting) RangeText() string {
 	lo, hi := !math.IsInf(s.Min, -1), !math.IsInf(s.Max, 1)
