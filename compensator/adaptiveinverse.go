@@ -88,6 +88,9 @@ func (c *AdaptiveInverse) Start(x, y float64) {
 	c.xOld, c.x, c.y = x, x, y
 }
 
+// Prime keeps target and measurement; α stays the assumed one.
+func (c *AdaptiveInverse) Prime(in Input, _ float64) { c.xOld, c.x, c.y = c.x, in.X, in.Y }
+
 // Command adapts α to the newest measurement and returns the target led by
 // the adapted delay.
 func (c *AdaptiveInverse) Command(in Input) float64 {

@@ -199,6 +199,13 @@ func (c *AdaptiveTimeSeries) Start(x, y float64) {
 	c.win.clear()
 }
 
+// Prime learns from the pair of what was commanded and measured, which says as
+// much of the actuator whoever commanded it.
+func (c *AdaptiveTimeSeries) Prime(in Input, u float64) {
+	c.Command(in)
+	c.last = u
+}
+
 // Command learns from the newest measurement and returns the command.
 func (c *AdaptiveTimeSeries) Command(in Input) float64 {
 	y := c.filter.step(&c.measured, in.Y)

@@ -30,6 +30,10 @@ type Compensator interface {
 	// Command returns the command u_k, m: the displacement to ask of the
 	// actuator for t_{k+1}. Inputs must be finite; the loop sees to that.
 	Command(in Input) float64
+	// Prime takes in one past tick in which another method commanded u, m: the
+	// history becomes what it would be, but nothing is learned from an error
+	// that was another's. It follows Start and comes before Command.
+	Prime(in Input, u float64)
 	// Retune changes the settings between two ticks and keeps the history, so
 	// that the command moves by no more than the change itself implies. On an
 	// error nothing is changed.

@@ -88,6 +88,12 @@ func (c *DelaySeeking) Start(x, _ float64) {
 	c.x, c.v = x, 0
 }
 
+// Prime keeps the target; the delay stays the assumed one.
+func (c *DelaySeeking) Prime(in Input, _ float64) {
+	c.past.push(in.X)
+	c.x, c.v = in.X, in.V
+}
+
 // Command adapts the delay to the newest measurement and returns the weighted
 // sum of present and past targets.
 func (c *DelaySeeking) Command(in Input) float64 {

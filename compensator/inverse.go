@@ -51,6 +51,9 @@ func newInverse(tick float64, v kind.Values) (Compensator, error) {
 // Start makes the previous target x.
 func (c *Inverse) Start(x, _ float64) { c.x = x }
 
+// Prime keeps the past target; a fixed method learns nothing.
+func (c *Inverse) Prime(in Input, _ float64) { c.Command(in) }
+
 // Command returns the target led by the delay.
 func (c *Inverse) Command(in Input) float64 {
 	u := c.alpha*in.X - (c.alpha-1)*c.x

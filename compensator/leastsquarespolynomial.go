@@ -145,11 +145,25 @@ func (c *LeastSquaresPolynomial) Start(x, _ float64) {
 	c.activity, c.x, c.v = 0, x, 0
 }
 
+// Prime keeps the target; delay and amplitude stay the assumed ones.
+func (c *LeastSquaresPolynomial) Prime(in Input, _ float64) {
+	c.push(in.X)
+	if c.adapt == adaptDelayAndAmplitude {
+		c.activity += c.fade * (c.v*c.v - c.activity)
+	}
+	c.x, c.v = in.X, in.V
+}
+
+// push takes a target into the points.
+func (c *LeastSquaresPolynomial) push(x float64) {
+	c.head = fitRing + (c.head+1)&(fitRing-1)
+	c.ring[c.head], c.ring[c.head-fitRing] = x, x
+}
+
 // Command adapts to the newest measurement and returns the fitted polynomial
 // ahead of the newest target.
 func (c *LeastSquaresPolynomial) Command(in Input) float64 {
-	c.head = fitRing + (c.head+1)&(fitRing-1)
-	c.ring[c.head], c.ring[c.head-fitRing] = in.X, in.X
+	c.push(in.X)
 	targets := c.ring[c.head+1-c.points : c.head+1]
 	if c.adapt == adaptNothing {
 		c.x, c.v = in.X, in.V

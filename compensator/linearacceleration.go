@@ -66,6 +66,9 @@ func newLinearAcceleration(tick float64, v kind.Values) (Compensator, error) {
 // Start makes all past accelerations 0.
 func (c *LinearAcceleration) Start(_, _ float64) { c.past.fill(0) }
 
+// Prime keeps the past target; a fixed method learns nothing.
+func (c *LinearAcceleration) Prime(in Input, _ float64) { c.Command(in) }
+
 // Command returns the predicted target.
 func (c *LinearAcceleration) Command(in Input) float64 {
 	c.past.push(in.A)

@@ -74,6 +74,9 @@ func newModelInverse(tick float64, v kind.Values) (Compensator, error) {
 // Start makes the previous acceleration 0.
 func (c *ModelInverse) Start(_, _ float64) { c.a = 0 }
 
+// Prime keeps the past target; a fixed method learns nothing.
+func (c *ModelInverse) Prime(in Input, _ float64) { c.Command(in) }
+
 // Command returns the target through the inverse of the model.
 func (c *ModelInverse) Command(in Input) float64 {
 	change := in.A - c.a

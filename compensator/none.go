@@ -32,6 +32,9 @@ func newNone(tick float64, v kind.Values) (Compensator, error) {
 // Start does nothing: there is no history.
 func (*None) Start(_, _ float64) {}
 
+// Prime does nothing: the method has no past.
+func (*None) Prime(Input, float64) {}
+
 // Command returns the target.
 func (*None) Command(in Input) float64 { return in.X }
 

@@ -90,6 +90,9 @@ func (p *Polynomial) Start(x, _ float64) {
 	}
 }
 
+// Prime keeps the past target; a fixed method learns nothing.
+func (p *Polynomial) Prime(in Input, _ float64) { p.Command(in) }
+
 // Command returns the weighted sum of present and past targets.
 func (p *Polynomial) Command(in Input) float64 {
 	ring, mask := p.ring, p.mask

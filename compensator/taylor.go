@@ -51,6 +51,9 @@ func newTaylor(tick float64, v kind.Values) (Compensator, error) {
 // Start does nothing: there is no history.
 func (*Taylor) Start(_, _ float64) {}
 
+// Prime does nothing: the method has no past.
+func (*Taylor) Prime(Input, float64) {}
+
 // Command returns the predicted target.
 func (c *Taylor) Command(in Input) float64 { return in.X + c.delay*in.V + c.half*in.A }
 

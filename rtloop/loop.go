@@ -65,6 +65,7 @@ type Config struct {
 	Channels []Channel
 	Window   float64 // trailing window of energy and subspace, model seconds
 	Ticks    int64   // expected length, to size the kept record
+	Memory   int     // ticks kept for a compensator that takes over; 0: none
 	Spectra  bool    // compare response spectra of measured and target
 	Judge    bool    // keep gauges; the reference response needs none. Limits hold always
 }
@@ -137,6 +138,7 @@ type channel struct {
 	target, command, measured, force float64 // of this tick's end
 	velocity                         float64 // of the actuator
 	dissipated                       float64
+	memory                           memory
 	tracking                         *gauge.Tracking
 	record                           *gauge.Record
 	spectrum                         *gauge.Spectrum // nil unless asked for
@@ -167,6 +169,9 @@ func NewLoop(cfg Config) (*Loop, error) {
 	}
 	for _, c := range cfg.Channels {
 		ch := channel{Channel: c}
+		if cfg.Memory > 0 {
+			ch.memory.ticks = make([]moment, cfg.Memory)
+		}
 		if cfg.Judge {
 			ch.tracking = gauge.NewTracking(window)
 			ch.record = gauge.NewRecord(cfg.Tick, int(min(cfg.Ticks, math.MaxInt32)))
@@ -206,6 +211,7 @@ func (l *Loop) Start(first Drive) {
 // start puts a channel at rest under the target x: commanded what the
 // compensator asks for there, and standing where the actuator then stands.
 func (c *channel) start(x float64) {
+	c.memory.at, c.memory.full = 0, false
 	c.Compensator.Start(x, x)
 	c.target, c.command, c.velocity = x, c.Compensator.Command(compensator.Input{X: x, Y: x}), 0
 	y := c.Actuator.Start(c.command, c.Specimen)
@@ -288,6 +294,9 @@ func (c *channel) advance(t *gauge.EnergyTick) {
 	// so copied just after it was written, stalls the tick for a tenth of its
 	// time (stores of 8 bytes, loads of 16).
 	c.command = c.Compensator.Command(compensator.Input{X: c.in.X, V: c.in.V, A: c.in.A, Y: yWas, R: rWas})
+	if c.memory.ticks != nil {
+		c.memory.add(compensator.Input{X: c.in.X, V: c.in.V, A: c.in.A, Y: yWas, R: rWas}, c.command)
+	}
 	y, v := c.Actuator.Advance(c.command, c.Specimen)
 	c.velocity = v
 	c.measured = c.Displacement.Read(y)

@@ -20,8 +20,11 @@ type Lane struct {
 	// the loop has been judged. An error stops this lane as interrupted and is
 	// returned by Run.
 	Observe func(*Loop) error
+	// Edits are changes of the lane's compensators, in the order of their ticks.
+	Edits []Edit
 
 	squaredError, squaredReference gauge.Sum
+	nextEdit                       int
 	err                            error
 }
 
@@ -37,6 +40,8 @@ type Rig struct {
 
 	drive driver
 	ran   bool
+	one   *block // of Advance
+	done  int64  // ticks that Advance has done
 }
 
 // blockTicks is how many ticks go through the pipeline at once: long enough
@@ -83,6 +88,42 @@ func (r *Rig) Run(ctx context.Context, progress func(done int64)) error {
 	return r.settle()
 }
 
+// Open puts everything at t = 0, to be carried on by Advance. A motion plays once,
+// so a Rig is opened once.
+func (r *Rig) Open() error {
+	if r.ran {
+		return errors.New("this rig has run; build it anew to run again")
+	}
+	r.ran = true
+	r.start()
+	r.one = r.newBlock()
+	r.one.drive = r.one.drive[:1]
+	return nil
+}
+
+// Advance carries the reference and all lanes through one tick, in this goroutine,
+// and reports whether there is another: the motion goes on and a lane runs. It
+// comes to the same bits as Run, allocates nothing and takes no lock.
+func (r *Rig) Advance() bool {
+	if r.done >= r.Ticks {
+		return false
+	}
+	r.done++
+	r.drive.fill(r.one.drive)
+	if r.Reference != nil {
+		r.runReference(r.one)
+	}
+	running := false
+	for _, l := range r.Lanes {
+		running = l.run(r.one) || running
+	}
+	return running && r.done < r.Ticks
+}
+
+// Close decides the outcomes after the last Advance and returns a lane's error, if
+// any.
+func (r *Rig) Close() error { return r.settle() }
+
 // start puts everything at t = 0.
 func (r *Rig) start() {
 	r.drive = driver{source: r.Motion, step: r.Step}
@@ -91,7 +132,7 @@ func (r *Rig) start() {
 		r.Reference.Start(first)
 	}
 	for _, l := range r.Lanes {
-		l.squaredError, l.squaredReference, l.err = gauge.Sum{}, gauge.Sum{}, nil
+		l.squaredError, l.squaredReference, l.nextEdit, l.err = gauge.Sum{}, gauge.Sum{}, 0, nil
 		l.Loop.Start(first)
 		l.observe()
 	}
@@ -164,6 +205,9 @@ func (r *Rig) runBlock(b *block) bool {
 
 func (l *Lane) run(b *block) bool {
 	for i, d := range b.drive {
+		if l.nextEdit < len(l.Edits) {
+			l.applyDue()
+		}
 		if l.Loop.outcome != Running {
 			return false
 		}
