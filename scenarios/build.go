@@ -29,13 +29,18 @@ type builder struct {
 	initial   []float64
 	window    float64
 	ticks     int64
+	memory    int // ticks that a loop remembers for a compensator that takes over
 }
 
 // Build makes everything that runs: the motion, the reference response and
 // one loop per lane, the configured one first. An error is an *Error that
 // names the setting.
-func (s *Scenario) Build() (*rtloop.Rig, error) {
-	b := &builder{s: s, ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
+func (s *Scenario) Build() (*rtloop.Rig, error) { return s.BuildLive(0) }
+
+// BuildLive is Build for a rig whose compensators may be replaced while it
+// runs: the loops remember so many seconds of physical time for them.
+func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
+	b := &builder{s: s, memory: int(math.Ceil(memory * s.Loop.Num("rate"))), ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
 	motion, err := b.motion()
 	if err != nil {
 		return nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
@@ -245,7 +250,7 @@ func (b *builder) config(channels []rtloop.Channel) rtloop.Config {
 	}
 	cfg := rtloop.Config{
 		Tick: b.tick(), Slowdown: b.s.Loop.Num("slowdown"), Drives: b.s.Excitation.Drives, Level: level,
-		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks,
+		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks, Memory: b.memory,
 		Spectra: b.s.Accept.Has("spectrum_error"), Judge: true,
 	}
 	if b.s.Substructure != nil {
@@ -275,7 +280,7 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 		channels = append(channels, c)
 	}
 	cfg := b.config(channels)
-	cfg.Tick, cfg.Slowdown, cfg.Judge = b.step(), 1, false
+	cfg.Tick, cfg.Slowdown, cfg.Judge, cfg.Memory = b.step(), 1, false, 0
 	return rtloop.NewLoop(cfg)
 }
 

@@ -32,9 +32,9 @@ var substructureSection = kind.Kind{
 	Settings: []kind.Setting{
 		kind.FreeText("integrator", "how the structure is integrated; see describe integrators").DefaultText(defaultIntegrator),
 		kind.Numbers("damping_ratio", quantity.None, "Rayleigh damping: the ratio of first and last mode of the whole structure, or one each").Optional().Range(0, 1),
-		kind.Matrix("mass_matrix", quantity.Mass, "full mass matrix, instead of storeys").Optional(),
-		kind.Matrix("stiffness_matrix", quantity.Stiffness, "full stiffness matrix, instead of storeys").Optional(),
-		kind.Matrix("damping_matrix", quantity.Damping, "full damping matrix, instead of a ratio").Optional(),
+		kind.Matrix("mass_matrix", quantity.Mass, "full mass matrix, instead of storeys").Optional().Range(-1e10, 1e10),
+		kind.Matrix("stiffness_matrix", quantity.Stiffness, "full stiffness matrix, instead of storeys").Optional().Range(-1e13, 1e13),
+		kind.Matrix("damping_matrix", quantity.Damping, "full damping matrix, instead of a ratio").Optional().Range(-1e13, 1e13),
 		kind.Numbers("influence", quantity.None, "how the ground motion acts on each level of full matrices; default all 1").Optional().Range(-10, 10),
 	},
 }

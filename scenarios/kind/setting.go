@@ -167,13 +167,13 @@ func (s *Setting) IsOptional() bool { return s.presence == optional }
 // IsRequired reports whether the setting must be given.
 func (s *Setting) IsRequired() bool { return s.presence == required }
 
-// In returns the setting with the driven dimension filled in, and with it a
-// range, unless the setting has one.
+// In returns the setting with the driven dimension filled in, and with it the
+// ends of the range that the setting leaves open.
 func (s Setting) In(driven quantity.Dim) Setting {
 	if s.Driven {
 		s.Dim, s.Driven = driven, false
-		if largest, ok := largestDriven[driven]; ok && math.IsInf(s.Min, -1) && math.IsInf(s.Max, 1) {
-			s.Min, s.Max = -largest, largest
+		if largest, ok := largestDriven[driven]; ok {
+			s.Min, s.Max = max(s.Min, -largest), min(s.Max, largest)
 		}
 	}
 	return s

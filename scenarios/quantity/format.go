@@ -7,11 +7,12 @@ import (
 )
 
 // Format writes an SI value for people: four significant digits in the unit
-// that keeps the number short, "12.50 kN/mm". An undefined value is "–".
+// that keeps the number short, "12.50 kN/mm". A value that is undefined, NaN or
+// infinite, is "–".
 func Format(si float64, dim Dim) string { return format(si, dim, 4) }
 
 func format(si float64, dim Dim, digits int) string {
-	if math.IsNaN(si) {
+	if math.IsNaN(si) || math.IsInf(si, 0) {
 		return "–"
 	}
 	unit := dim.SI()
