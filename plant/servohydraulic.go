@@ -12,7 +12,7 @@ var servoHydraulicKind = kind.Entry[NewActuator]{
 	Kind: kind.Kind{
 		Name:     "servo-hydraulic",
 		Doc:      "servo-valve, cylinder and inner displacement controller: lag that depends on force, flow and pressure that saturate",
-		Equation: "Q = Q_R·x_v·√((p_s − sgn(x_v)·p_L)/p_R), ṗ_L = (4β/V)·(Q − A·ẏ − C_l·p_L), m·ÿ = A·p_L − r − friction; x_v of second order behind a PID",
+		Equation: "Q = Q_R·x_v·√((p_s − sgn(x_v)·p_L)/p_R), ṗ_L = (4β/V)·(Q − A·ẏ − C_l·p_L), m·ÿ = A·p_L − r − friction; x_v of second order behind e = kp·(u − y) + ki·∫(u − y) − kd·ẏ − kdp·p_L; friction viscous below 1 mm/s",
 		Source:   "Merritt 1967",
 		Settings: []kind.Setting{
 			kind.Number("supply_pressure", quantity.Pressure, "supply pressure p_s over return").Default(21e6).Range(1e6, 1e8),
@@ -25,7 +25,7 @@ var servoHydraulicKind = kind.Entry[NewActuator]{
 			kind.Number("friction", quantity.Force, "Coulomb friction of the seals").Default(1e3).Range(0, 1e6),
 			kind.Number("valve_frequency", quantity.Frequency, "natural frequency of the valve's spool").Default(80).Range(1, 5000),
 			kind.Number("valve_damping", quantity.None, "damping ratio of the valve's spool").Default(0.8).Range(0.05, 10),
-			kind.Number("kp", quantity.PerLength, "proportional gain: opening per error").Default(175).Range(0, 1e5),
+			kind.Number("kp", quantity.PerLength, "proportional gain: opening per error; lower it for a heavy specimen: the default is good up to about half a tonne").Default(175).Range(0, 1e5),
 			kind.Number("ki", quantity.PerTravel, "integral gain: opening per error and time").Default(200).Range(0, 1e6),
 			kind.Number("kd", quantity.PerVelocity, "velocity gain: opening taken off per velocity of the piston").Default(0).Range(0, 1e3),
 			kind.Number("kdp", quantity.PerPressure, "load-pressure feedback: opening taken off per load pressure").Default(1e-9).Range(0, 1e-5),

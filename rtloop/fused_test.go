@@ -122,6 +122,7 @@ func compareFused(t *testing.T, program string) {
 		{"force", ch.force, ch.peakForce},
 		{"peak_command", ch.peakCommand, length},
 		{"peak_velocity", ch.peakVelocity, ch.peakVelocity},
+		{"peak_command_velocity", ch.peakHurry, ch.peakHurry},
 		{"peak_force", ch.peakForce, ch.peakForce},
 		// Of the kept record: how much there is, and that every sample is there.
 		{"record_ticks", ticks, 1},

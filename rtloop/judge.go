@@ -55,6 +55,7 @@ func (l *Loop) judge(t *gauge.EnergyTick) {
 		}
 		raise(&ch.peakCommand, ch.command)
 		raise(&ch.peakVelocity, ch.velocity)
+		raise(&ch.peakHurry, ch.hurry)
 		raise(&ch.peakForce, ch.force)
 	}
 	if l.integrator != nil {
@@ -108,6 +109,8 @@ func (l *Loop) limit(c *channel) {
 		l.tripOn(c, "stroke", stroke, c.Limits.Stroke)
 	case speed > c.Limits.Velocity:
 		l.tripOn(c, "velocity", speed, c.Limits.Velocity)
+	case math.Abs(c.hurry) > c.Limits.Velocity:
+		l.tripOn(c, "command velocity", math.Abs(c.hurry), c.Limits.Velocity)
 	case force > c.Limits.Force:
 		l.tripOn(c, "force", force, c.Limits.Force)
 	case lag > c.Limits.Error:

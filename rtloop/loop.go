@@ -11,7 +11,6 @@
 package rtloop
 
 import (
-	"fmt"
 	"math"
 	"strconv"
 
@@ -40,7 +39,7 @@ type Channel struct {
 // trips; +Inf where there is none.
 type Limits struct {
 	Stroke   float64 // of command and measured displacement, m
-	Velocity float64 // of the actuator, m/s, physical
+	Velocity float64 // of the actuator, and of what is commanded, m/s, physical
 	Force    float64 // measured, N
 	Error    float64 // of target − measured, m
 }
@@ -137,12 +136,15 @@ type channel struct {
 	in                               Drive   // target of this tick and its derivatives, physical
 	target, command, measured, force float64 // of this tick's end
 	velocity                         float64 // of the actuator
+	hurry                            float64 // what the command asks for: its change over the tick, m/s
+	perTick                          float64 // 1/s
 	dissipated                       float64
 	memory                           memory
 	tracking                         *gauge.Tracking
 	record                           *gauge.Record
 	spectrum                         *gauge.Spectrum // nil unless asked for
 	peakCommand, peakVelocity        float64
+	peakHurry                        float64
 	peakForce                        float64
 }
 
@@ -157,7 +159,7 @@ func NewLoop(cfg Config) (*Loop, error) {
 		n := cfg.Structure.N()
 		var err error
 		if l.integrator, err = substructure.NewWith(cfg.Integrator, cfg.Structure, l.dt, cfg.Method); err != nil {
-			return nil, fmt.Errorf("integrator: %w", err)
+			return nil, err
 		}
 		l.x, l.v, l.a, l.centred = l.integrator.X(), l.integrator.V(), l.integrator.A(), l.integrator.Centred()
 		l.yields = cfg.Structure.Yields()
@@ -168,7 +170,7 @@ func NewLoop(cfg Config) (*Loop, error) {
 		}
 	}
 	for _, c := range cfg.Channels {
-		ch := channel{Channel: c}
+		ch := channel{Channel: c, perTick: 1 / cfg.Tick}
 		if cfg.Memory > 0 {
 			ch.memory.ticks = make([]moment, cfg.Memory)
 		}
@@ -177,7 +179,7 @@ func NewLoop(cfg Config) (*Loop, error) {
 			ch.record = gauge.NewRecord(cfg.Tick, int(min(cfg.Ticks, math.MaxInt32)))
 			ch.record.Response = cfg.Structure == nil
 			if cfg.Spectra {
-				ch.spectrum = gauge.NewSpectrum(cfg.Tick)
+				ch.spectrum = gauge.NewSpectrum(l.dt)
 			}
 		}
 		l.channels = append(l.channels, ch)
@@ -190,22 +192,41 @@ func NewLoop(cfg Config) (*Loop, error) {
 // displacements as if they had for ever.
 func (l *Loop) Start(first Drive) {
 	l.ticks, l.outcome, l.trip, l.drive = 0, Running, nil, first.X
-	x0 := l.cfg.Initial
+	if !l.startAt(l.cfg.Initial) {
+		// Numbers of such a start are kept out of the figures.
+		l.drive = 0
+		l.startAt(nil)
+	}
+}
+
+// startAt puts the loop at rest at the displacements x0, nil for zero. It stops
+// where a channel stands beyond all reason, so that the loop has diverged, and
+// reports whether it got to the end.
+func (l *Loop) startAt(x0 []float64) bool {
+	before := l.outcome
 	if x0 == nil && l.integrator != nil {
 		x0 = make([]float64, l.cfg.Structure.N())
 	}
 	for j := range l.channels {
-		x := first.X
+		c, x := &l.channels[j], l.drive
 		if l.integrator != nil {
 			x = l.cfg.Structure.Project(x0, j)
 		}
-		l.channels[j].start(x)
+		if !(math.Abs(x) < divergence) {
+			l.diverge(c, "target", x)
+			return false
+		}
+		c.start(x)
+		if l.limit(c); l.outcome == Diverged && before != Diverged {
+			return false
+		}
 	}
 	if l.integrator != nil {
 		l.setLoad()
 		l.integrator.Start(x0, l.load)
 		l.startEnergy()
 	}
+	return true
 }
 
 // start puts a channel at rest under the target x: commanded what the
@@ -220,6 +241,7 @@ func (c *channel) start(x float64) {
 	c.measured, c.force = c.Displacement.Read(y), c.Force.Read(c.Specimen.Force())
 	c.Compensator.Start(x, c.measured)
 	_, c.dissipated = c.Specimen.Energy()
+	c.hurry, c.peakHurry = 0, 0
 	c.peakCommand, c.peakVelocity, c.peakForce = math.Abs(c.command), 0, math.Abs(c.force)
 	if c.tracking != nil {
 		c.tracking.Start(c.target, c.measured)
@@ -288,7 +310,7 @@ func (l *Loop) aim(d Drive) bool {
 // work by the trapezoid rule. It is the force that goes back into the structure
 // that works on the target, so that the balance closes.
 func (c *channel) advance(t *gauge.EnergyTick) {
-	xWas, yWas, rWas := c.target, c.measured, c.force
+	xWas, yWas, rWas, uWas := c.target, c.measured, c.force, c.command
 	c.target = c.in.X
 	// The input is put together where it is handed over: one that is kept, and
 	// so copied just after it was written, stalls the tick for a tenth of its
@@ -297,6 +319,7 @@ func (c *channel) advance(t *gauge.EnergyTick) {
 	if c.memory.ticks != nil {
 		c.memory.add(compensator.Input{X: c.in.X, V: c.in.V, A: c.in.A, Y: yWas, R: rWas}, c.command)
 	}
+	c.hurry = (c.command - uWas) * c.perTick
 	y, v := c.Actuator.Advance(c.command, c.Specimen)
 	c.velocity = v
 	c.measured = c.Displacement.Read(y)
@@ -333,6 +356,9 @@ func (l *Loop) Ticks() int64 { return l.ticks }
 
 // Outcome says how the loop stands.
 func (l *Loop) Outcome() Outcome { return l.outcome }
+
+// Structure returns the numerical substructure; nil when the target is driven.
+func (l *Loop) Structure() *substructure.Structure { return l.cfg.Structure }
 
 // Displacements returns a view of the displacements of all levels relative to
 // the ground, m; nil when the target is driven.

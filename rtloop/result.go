@@ -48,6 +48,7 @@ type ChannelResult struct {
 	PeakTarget        Figure            `json:"peak_target_m"`
 	PeakCommand       Figure            `json:"peak_command_m"`
 	PeakVelocity      Figure            `json:"peak_velocity_m_s"`
+	PeakHurry         Figure            `json:"peak_command_velocity_m_s"` // change of the command in a tick
 	PeakForce         Figure            `json:"peak_force_N"`
 	Coefficients      map[string]Figure `json:"coefficients"`
 	// Of a driven target: how measured answers target by thirds of an octave.
@@ -106,7 +107,7 @@ func (c *channel) result() ChannelResult {
 		Delay: Figure(align.Delay), AmplitudeRatio: Figure(t.AmplitudeRatio()),
 		FEI:               FEIResult{Figure(align.FEI.Amplitude), Figure(align.FEI.Delay), Figure(align.FEI.Frequency)},
 		TrackingIndicator: Figure(t.Indicator()), PeakTarget: Figure(t.PeakTarget()),
-		PeakCommand: Figure(c.peakCommand), PeakVelocity: Figure(c.peakVelocity), PeakForce: Figure(c.peakForce),
+		PeakCommand: Figure(c.peakCommand), PeakVelocity: Figure(c.peakVelocity), PeakHurry: Figure(c.peakHurry), PeakForce: Figure(c.peakForce),
 		Coefficients: map[string]Figure{}, SpectrumError: Figure(math.NaN()),
 	}
 	for _, b := range align.Bands {

@@ -276,6 +276,9 @@ func (r *Rig) Results() []LaneResult {
 			out[i] = l.Loop.Result()
 			out[i].Name = l.Name
 			out[i].ResponseError = Figure(l.ResponseError())
+			if r.Reference != nil && r.Reference.outcome == Diverged {
+				out[i].ResponseError = Figure(math.NaN()) // also where both failed in the same tick
+			}
 		})
 	}
 	wg.Wait()

@@ -114,6 +114,7 @@ func TestTrips(t *testing.T) {
 	}{
 		{"stroke", Limits{0.005, math.Inf(1), math.Inf(1), math.Inf(1)}},
 		{"velocity", Limits{math.Inf(1), 0.05, math.Inf(1), math.Inf(1)}},
+		{"command velocity", Limits{math.Inf(1), 0.05, math.Inf(1), math.Inf(1)}},
 		{"force", Limits{math.Inf(1), math.Inf(1), 5000, math.Inf(1)}},
 		{"error", Limits{math.Inf(1), math.Inf(1), math.Inf(1), 0.0005}},
 	} {
@@ -121,6 +122,9 @@ func TestTrips(t *testing.T) {
 			const ticks = 8000
 			lane := &Lane{Name: "x", Loop: standardLoop(t, "none", ticks)}
 			lane.Loop.channels[0].Limits = c.limits
+			if c.limit == "velocity" { // an actuator that runs ahead of its command
+				lane.Loop.channels[0].Actuator = newActuator(t, plant.Timing{Tick: standardTick}, kind.Values{"gain": kind.Num(1.5)})
+			}
 			rows := 0
 			lane.Observe = func(*Loop) error { rows++; return nil }
 			rig := &Rig{Motion: &fixedMotion{samples: shaking(ticks+1, standardTick)}, Ticks: ticks, Step: standardTick, Lanes: []*Lane{lane}}

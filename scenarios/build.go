@@ -15,7 +15,6 @@ import (
 	"antelag/rtloop/excitation"
 	"antelag/rtloop/substructure"
 	"antelag/scenarios/kind"
-	"antelag/scenarios/quantity"
 )
 
 // targetWindow is the trailing window of a tracking test, which has no first
@@ -43,18 +42,18 @@ func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
 	b := &builder{s: s, memory: int(math.Ceil(memory * s.Loop.Num("rate"))), ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
 	motion, err := b.motion()
 	if err != nil {
-		return nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
+		return nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
 	}
 	if s.Substructure != nil {
 		if err := b.buildStructure(); err != nil {
-			return nil, s.doc.settingError("substructure", &substructureSection, err)
+			return nil, b.structureError(err)
 		}
 		if err := b.release(motion); err != nil {
-			return nil, s.doc.errorAt("excitation", err)
+			return nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
 		}
 	}
 	b.window = b.energyWindow()
-	if err := errors.Join(b.checkStep(), b.checkMemory()); err != nil {
+	if err := b.check(); err != nil {
 		return nil, err
 	}
 	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
@@ -131,6 +130,26 @@ func (b *builder) buildStructure() error {
 	return err
 }
 
+// structureError places what package substructure says: "storey 2: mass: …" at
+// that storey's setting, "mass: …" at the matrix.
+func (b *builder) structureError(err error) error {
+	path, k := "substructure", &substructureSection
+	var placed *Error
+	if errors.As(err, &placed) {
+		return err
+	}
+	text := err.Error()
+	first, rest, _ := strings.Cut(text, ": ")
+	var storey int
+	switch n, _ := fmt.Sscanf(first, "storey %d", &storey); {
+	case n == 1:
+		path, k, text = fmt.Sprintf("substructure.storey[%d]", storey-1), &storeySection, rest
+	case b.s.Substructure.Values.Has(first + "_matrix"):
+		text = first + "_matrix: " + rest
+	}
+	return b.s.doc.settingError(path, k, &settingProblem{text, err})
+}
+
 func storeys(values []kind.Values) []substructure.Storey {
 	out := make([]substructure.Storey, len(values))
 	for i, v := range values {
@@ -192,45 +211,6 @@ func (b *builder) energyWindow() float64 {
 	return min(window, b.s.Loop.Num("duration"))
 }
 
-// What the gauges keep, bytes: a tick of every lane's channel in the record (up
-// to two segments of 2²⁰) and in the window of its subspace, a tick of every lane
-// in the window of its energy.
-const (
-	bytesPerTick  = 16
-	recordTicks   = 1 << 20
-	windowBytes   = 32
-	largestMemory = 8 << 30
-)
-
-// checkMemory refuses a test whose gauges would not fit into the memory of a
-// common machine, before anything is allocated.
-func (b *builder) checkMemory() error {
-	lanes, channels := float64(1+len(b.s.Lanes)), float64(len(b.s.Channels))
-	record := min(float64(b.ticks), 2*recordTicks) * bytesPerTick
-	window := b.window / b.step() * windowBytes
-	total := lanes * (channels*(record+window) + window)
-	if total > largestMemory {
-		return b.s.doc.errorAt("loop", fmt.Errorf("%g lanes of %g channels with %.3g ticks in the energy window would keep %.3g GB of ticks; at most %.3g GB (a shorter energy_window or fewer lanes need less)",
-			lanes, channels, b.window/b.step(), total/1e9, float64(largestMemory)/1e9))
-	}
-	return nil
-}
-
-// checkStep refuses a step at which the integrator is unstable whatever the
-// actuator does: explicit Newmark from 2/ω_max on.
-func (b *builder) checkStep() error {
-	if b.structure == nil || b.s.Substructure.Values.Text("integrator") != "newmark-explicit" {
-		return nil
-	}
-	f := b.structure.Frequencies()
-	fastest := f[len(f)-1]
-	if limit := 2 / fastest; b.step() >= limit {
-		return b.s.doc.errorAt("loop.rate", fmt.Errorf("the model step of %s is not below %s, where newmark-explicit becomes unstable with the highest mode at %s; raise the rate or use CR",
-			quantity.Short(b.step(), quantity.Time), quantity.Short(limit, quantity.Time), quantity.Short(fastest/(2*math.Pi), quantity.Frequency)))
-	}
-	return nil
-}
-
 // integrator returns the integrator's name and those settings of the section
 // that are its own.
 func (s *Substructure) integrator() (string, kind.Values) {
@@ -281,7 +261,16 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 	}
 	cfg := b.config(channels)
 	cfg.Tick, cfg.Slowdown, cfg.Judge, cfg.Memory = b.step(), 1, false, 0
-	return rtloop.NewLoop(cfg)
+	return b.loop(cfg)
+}
+
+// loop builds one loop; what may fail there is the integrator.
+func (b *builder) loop(cfg rtloop.Config) (*rtloop.Loop, error) {
+	l, err := rtloop.NewLoop(cfg)
+	if err != nil {
+		return nil, b.s.doc.settingError("substructure", &substructureSection, err)
+	}
+	return l, nil
 }
 
 // perfect is a channel whose actuator does at once what it is told. Without a
@@ -340,7 +329,7 @@ func (b *builder) lane(i int) (*rtloop.Loop, error) {
 		}
 		channels = append(channels, c)
 	}
-	return rtloop.NewLoop(b.config(channels))
+	return b.loop(b.config(channels))
 }
 
 // channel builds all of channel j but its compensator.

@@ -33,7 +33,12 @@ func (s *Scenario) path(name string) string {
 
 func (s *Scenario) open(name string) (io.ReadCloser, error) {
 	if inside, ok := strings.CutPrefix(name, embedded); ok {
-		return shipped.Open(inside)
+		f, err := shipped.Open(inside)
+		if err != nil {
+			known, _ := fs.Glob(shipped, "*.txt") //nolint:errcheck // the pattern is a constant
+			return nil, &kind.UnknownError{What: "embedded data file", Got: inside, Known: known}
+		}
+		return f, nil
 	}
 	return os.Open(s.path(name))
 }
@@ -106,9 +111,15 @@ func (s *Scenario) With(changes ...Change) (*Scenario, error) {
 }
 
 func resolve(doc *document, dir string, changes []Change) (*Scenario, error) {
-	for _, c := range changes {
-		if err := doc.apply(c); err != nil {
-			return nil, err
+	// What chooses a kind comes first: it drops the settings of the old one.
+	for _, choosing := range []bool{true, false} {
+		for _, c := range changes {
+			if c.chooses() != choosing {
+				continue
+			}
+			if err := doc.apply(c); err != nil {
+				return nil, err
+			}
 		}
 	}
 	return read(doc, dir)

@@ -57,13 +57,13 @@ func lookUp(name string, chapter func(Chapter), one func(Chapter, *kind.Kind)) e
 	found := name == ""
 	for _, c := range Chapters() {
 		known = append(known, c.Title)
-		if name == "" || name == c.Title {
+		if name == "" || strings.EqualFold(name, c.Title) || strings.EqualFold(name+"s", c.Title) {
 			found = true
 			chapter(c)
 		}
 		for _, k := range c.Kinds {
 			known = append(known, k.Name)
-			if name == k.Name {
+			if strings.EqualFold(name, k.Name) {
 				found = true
 				one(c, k)
 			}

@@ -72,17 +72,38 @@ func (d *document) apply(c Change) error {
 	}
 	key := steps[len(steps)-1]
 	path = join(path, key)
-	if key == "kind" && at["kind"] != c.Value {
-		// The settings of another kind mean nothing to this one; what an
-		// excitation drives is no setting of its kind.
-		maps.DeleteFunc(at, func(k string, _ any) bool { return k != "drives" })
-		if spread, ok := d.tree["spread"].(map[string]any); ok {
-			maps.DeleteFunc(spread, func(p string, _ any) bool { return strings.HasPrefix(p, strings.TrimSuffix(c.Path, "kind")) })
-		}
+	value := parseValue(c.Value)
+	if word, ok := value.(string); ok && at[key] != word {
+		d.dropOthers(full, key, at)
 	}
-	at[key] = parseValue(c.Value)
+	at[key] = value
 	d.where[path] = where
 	return nil
+}
+
+// chooses reports whether a change chooses what other settings mean.
+func (c Change) chooses() bool {
+	return strings.HasSuffix(c.Path, ".kind") || c.Path == "substructure.integrator"
+}
+
+// dropOthers takes out the settings that mean nothing any more when another
+// kind or integrator is chosen in a section, and what [spread] says of them.
+func (d *document) dropOthers(full, key string, section map[string]any) {
+	switch {
+	case key == "kind":
+		maps.DeleteFunc(section, func(k string, _ any) bool {
+			// What an excitation drives is no setting of its kind.
+			return k != "drives" && (k != "level" || section["drives"] != "force")
+		})
+		if spread, ok := d.tree["spread"].(map[string]any); ok {
+			maps.DeleteFunc(spread, func(p string, _ any) bool {
+				of, err := d.expand(p)
+				return err == nil && strings.HasPrefix(of, strings.TrimSuffix(full, "kind"))
+			})
+		}
+	case full == "substructure.integrator":
+		maps.DeleteFunc(section, func(k string, _ any) bool { return k != "storey" && !substructureSection.Has(k) })
+	}
 }
 
 // expand turns the name of a channel or lane at the start of a path into its

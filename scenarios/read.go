@@ -310,6 +310,13 @@ func (r *reader) substructure(root map[string]any, drives excitation.Drives) *Su
 		r.fail("substructure.integrator", err)
 	}
 	k := substructureKind(name)
+	for _, key := range sortedKeys(t) {
+		for _, other := range substructure.Integrators.Kinds() {
+			if !k.Has(key) && other.Has(key) {
+				r.failf("substructure."+key, "is a setting of the integrator %s; here it is %s", other.Name, name)
+			}
+		}
+	}
 	s := &Substructure{Part: Part{k, r.section(k, t, "substructure", quantity.None, "storey")}}
 	for i, storey := range r.tables(t, "storey", "substructure.storey") {
 		s.Storeys = append(s.Storeys, r.section(&storeySection, storey, "substructure.storey["+strconv.Itoa(i)+"]", quantity.None))

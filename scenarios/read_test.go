@@ -80,6 +80,8 @@ func TestWrongFiles(t *testing.T) {
 		{"missing record", "kind = \"sine\"\namplitude = \"0.1 g\"\nfrequency = \"1.5 Hz\"", "kind = \"record\"\nfile = \"nowhere.txt\"\nunit = \"g\"\nstep = \"20 ms\"", `x.toml:12: excitation.file: `},
 		{"driven dimension", `amplitude = "0.1 g"`, `amplitude = "10 kN"`, `x.toml:12: excitation.amplitude: "10 kN" is a force (N); it must be an acceleration (m/s^2)`},
 		{"structure under a driven target", `kind = "sine"`, "kind = \"sine\"\ndrives = \"target\"", `x.toml:`},
+		{"embedded file misspelt", "kind = \"sine\"\namplitude = \"0.1 g\"\nfrequency = \"1.5 Hz\"", "kind = \"record\"\nfile = \"embedded:vally.txt\"\nunit = \"g\"\nstep = \"20 ms\"", `x.toml:12: excitation.file: unknown embedded data file "vally.txt"; did you mean "valley.txt"?`},
+		{"more mass in the specimen than in the structure", `stiffness = "1 kN/mm"`, "stiffness = \"1 kN/mm\"\n[[channel.specimen]]\nkind = \"mass\"\nmass = \"101 t\"", `x.toml:14: channel: the specimens' masses are 1.01 times the structure's own where they act`},
 		{"level without force", `kind = "sine"`, "kind = \"sine\"\nlevel = 1", `x.toml:12: excitation.level: is for drives = "force"`},
 		{"amplitude beyond sense", `"0.1 g"`, `"1e30 g"`, `x.toml:12: excitation.amplitude: 9.80665e+30 m/s² is above 1000 m/s²`},
 		{"unknown drive", `kind = "sine"`, "kind = \"sine\"\ndrives = \"sky\"", `x.toml:12: excitation.drives: unknown word "sky"`},
@@ -120,6 +122,7 @@ func TestWrongFiles(t *testing.T) {
 func TestRefusedBeforeBuilding(t *testing.T) {
 	for _, c := range []struct{ path, value, also, want string }{
 		{"substructure.integrator", "newmark-explicit", "substructure.storey[0].stiffness=1e9 N/mm", `x.toml:3: loop.rate: the model step of 1 ms is not below`},
+		{"excitation.frequency", "60 Hz", "loop.rate=100 Hz", `--set excitation.frequency: excitation.frequency: 60 Hz is not below half the rate in model time, 50 Hz`},
 		{"loop.rate", "100000 Hz", "loop.duration=86400 s", `x.toml:2: loop: 1 lanes of 1 channels`},
 	} {
 		also, err := ParseChange(c.also)
@@ -213,6 +216,54 @@ func TestSetKind(t *testing.T) {
 	}
 	if c := s.Channels[0].Compensator; c.Kind.Name != "inverse" || c.Values.Num("delay") != 0.009 {
 		t.Errorf("got %s %v", c.Kind.Name, c.Values)
+	}
+}
+
+// Choosing a kind or an integrator drops what belonged to the old one and keeps
+// what was set beside it, in whatever order the changes come.
+func TestSetChoosesBeforeItSets(t *testing.T) {
+	with := func(text string, changes ...string) *Scenario {
+		t.Helper()
+		var cs []Change
+		for _, c := range changes {
+			change, err := ParseChange(c)
+			if err != nil {
+				t.Fatal(err)
+			}
+			cs = append(cs, change)
+		}
+		s, err := Parse("x.toml", []byte(text), ".", cs...)
+		if err != nil {
+			t.Fatalf("%v: %v", changes, err)
+		}
+		return s
+	}
+	for _, kind := range []string{"polynomial", `"polynomial"`} { // what it is already, quoted or not
+		if s := with(base, "damper.compensator.kind="+kind); s.Channels[0].Compensator.Values.Num("delay") != 0.008 {
+			t.Errorf("the same kind %s lost its delay", kind)
+		}
+	}
+	if s := with(base, "damper.compensator.delay=5 ms", "damper.compensator.kind=inverse"); s.Channels[0].Compensator.Values.Num("delay") != 0.005 {
+		t.Error("a setting before its kind was lost")
+	}
+	force := strings.Replace(base, "kind = \"sine\"\namplitude = \"0.1 g\"", "kind = \"pulse\"\ndrives = \"force\"\nlevel = 1\nwidth = \"1 s\"\namplitude = \"1 kN\"", 1)
+	force = strings.Replace(force, "frequency = \"1.5 Hz\"\n", "", 1)
+	if s := with(force, "excitation.kind=sine", "excitation.amplitude=2 kN", "excitation.frequency=1 Hz"); s.Excitation.Values.Int("level") != 1 {
+		t.Error("the force moved to another level")
+	}
+	spread := base + "\n[spread]\n\"damper.actuator.delay\" = 0.2\n\"damper.compensator.delay\" = 0.1\n"
+	for _, path := range []string{"damper.actuator.kind", "channel[0].actuator.kind"} {
+		if s := with(spread, path+"=servo-hydraulic"); len(s.Spread) != 1 || s.Spread[0].Path != "damper.compensator.delay" {
+			t.Errorf("%s: spread %v", path, s.Spread)
+		}
+	}
+	kr := strings.Replace(base, "damping_ratio = 0.03", "damping_ratio = 0.03\nintegrator = \"KR-alpha\"\nrho_infinity = 0.5", 1)
+	if s := with(kr, "substructure.integrator=CR"); s.Substructure.Values.Has("rho_infinity") || !s.Substructure.Values.Has("damping_ratio") {
+		t.Errorf("substructure %v", s.Substructure.Values)
+	}
+	if _, err := Parse("x.toml", []byte(strings.Replace(kr, "KR-alpha", "CR", 1)), "."); err == nil ||
+		err.Error() != "x.toml:8: substructure.rho_infinity: is a setting of the integrator KR-alpha; here it is CR" {
+		t.Errorf("got %v", err)
 	}
 }
 

@@ -4,6 +4,8 @@
 package scenarios
 
 import (
+	"slices"
+
 	"antelag/rtloop/excitation"
 	"antelag/scenarios/kind"
 )
@@ -50,6 +52,13 @@ type Excitation struct {
 	Part
 	Drives excitation.Drives
 	Values kind.Values // of the section itself
+}
+
+// kind is the kind with the settings of the section itself.
+func (e *Excitation) kind() *kind.Kind {
+	k := *e.Kind
+	k.Settings = append(slices.Clone(k.Settings), excitationSection.Settings...)
+	return &k
 }
 
 // Channel is one actuator with all that belongs to it.

@@ -27,10 +27,21 @@ var loopSection = kind.Kind{
 
 const defaultIntegrator = "CR"
 
+// integratorWords lists the integrators, the default first.
+func integratorWords() []string {
+	words := []string{defaultIntegrator}
+	for _, name := range substructure.Names() {
+		if name != defaultIntegrator {
+			words = append(words, name)
+		}
+	}
+	return words
+}
+
 var substructureSection = kind.Kind{
 	Name: "substructure", Doc: "the numerical substructure: storeys, or full matrices", Source: "common practice",
 	Settings: []kind.Setting{
-		kind.FreeText("integrator", "how the structure is integrated; see describe integrators").DefaultText(defaultIntegrator),
+		kind.Word("integrator", "how the structure is integrated; its own settings follow it", integratorWords()...),
 		kind.Numbers("damping_ratio", quantity.None, "Rayleigh damping: the ratio of first and last mode of the whole structure, or one each").Optional().Range(0, 1),
 		kind.Matrix("mass_matrix", quantity.Mass, "full mass matrix, instead of storeys").Optional().Range(-1e10, 1e10),
 		kind.Matrix("stiffness_matrix", quantity.Stiffness, "full stiffness matrix, instead of storeys").Optional().Range(-1e13, 1e13),
@@ -72,7 +83,7 @@ var limitsSection = kind.Kind{
 	Name: "limits", Doc: "what a channel may reach before the loop trips", Source: "common practice",
 	Settings: []kind.Setting{
 		kind.Number("stroke", quantity.Length, "largest commanded or measured displacement").Optional().Range(1e-6, 100),
-		kind.Number("velocity", quantity.Velocity, "largest velocity of the actuator, physical").Optional().Range(1e-6, 100),
+		kind.Number("velocity", quantity.Velocity, "largest velocity of the actuator, and largest change of the command in a tick over the tick, physical").Optional().Range(1e-6, 100),
 		kind.Number("force", quantity.Force, "largest measured force").Optional().Range(1e-3, 1e10),
 		kind.Number("error", quantity.Length, "largest difference of target and measured").Optional().Range(1e-7, 100),
 	},
@@ -86,15 +97,36 @@ var acceptSection = kind.Kind{
 		kind.Number("delay", quantity.Time, "largest remaining delay, late or early").Optional().Range(0, 1),
 		kind.Number("peak_error", quantity.Length, "largest tracking error").Optional().Range(0, 10),
 		kind.Number("energy_margin", quantity.None, "smallest energy margin at any time of the run").Optional().Range(-10, 1),
-		kind.Number("spectrum_error", quantity.None, "largest rms deviation of the measured response spectrum (5 % damping, 0.1 s to 3 s) from the target's; for a driven target").Optional().Range(0, 10),
+		kind.Number("spectrum_error", quantity.None, "largest rms deviation of the measured response spectrum (5 % damping, periods of 0.1 s to 3 s in model time) from the target's; for a driven target").Optional().Range(0, 10),
 		kind.Number("response_error", quantity.None, "largest rms error of the structure's response over rms reference response").Optional().Range(0, 10),
 	},
 }
 
+// What the reader reads by hand, described for the manual.
+var (
+	channelSection = kind.Kind{
+		Name: "channel", Doc: "one actuator with its specimen, sensors, compensator and limits; [[channel]], as many as there are", Source: "common practice",
+		Settings: []kind.Setting{
+			kind.FreeText("name", "name of the channel, in paths and logs: letters, digits, _ and -").Optional().Sample(`"damper"`),
+			kind.Numbers("between", quantity.None, "the two levels that the specimen acts between, 0 being the ground; the target is that of the second less that of the first").Optional().Range(0, 60).Sample("[0, 1]"),
+		},
+	}
+	laneSection = kind.Kind{
+		Name: "lane", Doc: "an alternative compensator, [lane.compensator], run beside the configured one; [[lane]], as many as wanted", Source: "common practice",
+		Settings: []kind.Setting{
+			kind.FreeText("name", "name of the lane").Optional().Sample(`"other"`),
+			kind.FreeText("channel", "the one channel that it is for; without it, all").Optional(),
+		},
+	}
+	spreadSection = kind.Kind{
+		Name: "spread", Doc: "how far settings may be from their values in studies: \"PATH\" = 0.2 for a fifth either way, or = [low, high]", Source: "common practice",
+	}
+)
+
 // Sections lists the fixed sections, for the manual.
 func Sections() []*kind.Kind {
 	return []*kind.Kind{
-		&loopSection, &substructureSection, &storeySection, &excitationSection,
-		&plant.SensorSettings, &limitsSection, &acceptSection,
+		&loopSection, &substructureSection, &storeySection, &excitationSection, &channelSection,
+		&plant.SensorSettings, &limitsSection, &laneSection, &acceptSection, &spreadSection,
 	}
 }

@@ -60,6 +60,7 @@ type (
 		PeakTarget        *float64            `json:"peak_target_m"`
 		PeakCommand       *float64            `json:"peak_command_m"`
 		PeakVelocity      *float64            `json:"peak_velocity_m_s"`
+		PeakHurry         *float64            `json:"peak_command_velocity_m_s"`
 		PeakForce         *float64            `json:"peak_force_N"`
 		Coefficients      map[string]*float64 `json:"coefficients"`
 		Response          []bandJSON          `json:"response,omitempty"`

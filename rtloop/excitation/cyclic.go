@@ -16,7 +16,7 @@ var cyclicKind = kind.Entry[New]{
 		Equation: "x(t) = A_i sin(2π t/T) in every cycle of step i, joined at zero; after the list 0. aisc-341: " +
 			"A_i = L θ_i, 6 cycles each at θ = 0.00375, 0.005, 0.0075 rad, 4 at 0.01, 2 each at 0.015, 0.02, 0.03, 0.04 " +
 			"and at every further 0.01 until the run ends",
-		Source: "common practice; aisc-341: ANSI/AISC 341, chapter K, beam-to-column connections",
+		Source: "common practice; aisc-341: ANSI/AISC 341, chapter K, beam-to-column connections (from memory)",
 		Settings: []kind.Setting{
 			kind.Word("protocol", "where the amplitudes come from: this list, or the sequence of that standard", protocolList, protocolAISC),
 			drivenList("amplitudes", "amplitudes A_i in their order; a negative one starts downward, zero is a pause").

@@ -20,7 +20,7 @@ var recordKind = kind.Entry[New]{
 		Source: "common practice; AT2 is the file form of the PEER NGA ground motion database; " +
 			"baseline correction after Converse & Brady 1992 and Boore 2005 (zero pads, acausal Butterworth high-pass)",
 		Settings: []kind.Setting{
-			kind.FreeText("file", "file of the record, relative to the scenario"),
+			kind.FreeText("file", "file of the record, relative to the scenario; a name that begins with embedded: ships with the program"),
 			kind.Number("step", quantity.Time, "time between values; every number of the file is then a value").
 				Range(1e-6, 3600).Optional(),
 			kind.FreeText("unit", "unit of the file's values; AT2 files say theirs").Optional().Sample(`"g"`),

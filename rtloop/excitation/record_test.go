@@ -136,7 +136,7 @@ func TestRecordErrorsNameTheSetting(t *testing.T) {
 		drives Drives
 		want   string
 	}{
-		{without("file"), Ground, "file: is missing; record needs it: file of the record, relative to the scenario, a text"},
+		{without("file"), Ground, "file: is missing; record needs it: file of the record, relative to the scenario; a name that begins with embedded: ships with the program, a text"},
 		{without("unit"), Ground, "unit: blanks.txt does not say the unit of its values; give one, it must be an acceleration (m/s^2)"},
 		{text("unit", "kN"), Ground, `unit: "kN" is a force (N); with drives = "ground" it must be an acceleration (m/s^2)`},
 		{text("unit", "m/s"), Ground, `unit: "m/s" is a velocity (m/s); with drives = "ground" it must be an acceleration (m/s^2)`},

@@ -14,7 +14,7 @@ var releaseKind = kind.Entry[New]{
 		Equation: "x_level(0) = A held statically, v(0) = 0, no ground motion",
 		Source:   "common practice (snap-back test)",
 		Settings: []kind.Setting{
-			kind.Number("amplitude", quantity.Length, "displacement A at which the level is held"),
+			kind.Number("amplitude", quantity.Length, "displacement A at which the level is held").Range(-10, 10),
 			kind.Integer("level", "the level that is held, 1 the lowest, 0 the topmost").Default(0).Range(0, 1000),
 		},
 	},

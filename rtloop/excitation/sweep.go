@@ -16,8 +16,8 @@ var sweepKind = kind.Entry[New]{
 		Source: "common practice",
 		Settings: []kind.Setting{
 			kind.Driven("amplitude", "amplitude A; a negative one starts downward"),
-			kind.Number("from", quantity.Frequency, "frequency f0 at the start").Range(lowestFrequency, highestFrequency),
-			kind.Number("to", quantity.Frequency, "frequency f1 at the end of the run").Range(lowestFrequency, highestFrequency),
+			kind.Number("from", quantity.Frequency, "frequency f0 at the start").Range(lowestFrequency, highestFrequency).Sample(`"0.2 Hz"`),
+			kind.Number("to", quantity.Frequency, "frequency f1 at the end of the run").Range(lowestFrequency, highestFrequency).Sample(`"10 Hz"`),
 			kind.Word("law", "how the frequency runs: by equal Hz or by equal octaves in equal time", "linear", "log"),
 		},
 	},

@@ -41,14 +41,14 @@ func TestStoreysRefused(t *testing.T) {
 		{"level below the ground", one(good), nil, []Attachment{{0, 1, 1}, {-1, 1, 1}}, "channel 2: between: levels must be 0 to 2, are -1 and 1"},
 		{"twice the same level", one(good), nil, []Attachment{{1, 1, 1}}, "channel 1: between: the two levels must differ, both are 1"},
 		{"NaN specimen", one(good), nil, []Attachment{{0, 1, math.NaN()}}, "channel 1: the specimen's initial stiffness is NaN"},
-		{"mechanism", []Storey{good, good, {Mass: 1}, good}, nil, nil, "stiffness: level 3 is a free mechanism: neither a storey nor a specimen holds it in place"},
-		{"mechanism with a specimen elsewhere", one(Storey{Mass: 1}), nil, []Attachment{{0, 1, 1e6}}, "stiffness: level 2 is a free mechanism: neither a storey nor a specimen holds it in place"},
-		{"nothing at all", []Storey{{Mass: 1}}, nil, nil, "stiffness: level 1 is a free mechanism: neither a storey nor a specimen holds it in place"},
+		{"mechanism", []Storey{good, good, {Mass: 1}, good}, nil, nil, "stiffness: level 3 is a free mechanism: neither a storey nor a specimen holds it at rest (an open gap, a damper and a mass do not)"},
+		{"mechanism with a specimen elsewhere", one(Storey{Mass: 1}), nil, []Attachment{{0, 1, 1e6}}, "stiffness: level 2 is a free mechanism: neither a storey nor a specimen holds it at rest (an open gap, a damper and a mass do not)"},
+		{"nothing at all", []Storey{{Mass: 1}}, nil, nil, "stiffness: level 1 is a free mechanism: neither a storey nor a specimen holds it at rest (an open gap, a damper and a mass do not)"},
 		{"specimen that pushes over", one(good), nil, []Attachment{{0, 2, -18e6}}, "stiffness: the whole structure, specimens included, is not positive definite; it gives way at level 1"},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			_, err := FromStoreys(c.storeys, Damping{Ratios: c.ratios}, c.at)
-			refused(t, err, "substructure: "+c.want)
+			refused(t, err, ""+c.want)
 		})
 	}
 }
@@ -85,7 +85,7 @@ func TestMatricesRefused(t *testing.T) {
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			_, err := FromMatrices(c.mass, c.stiffness, c.damping, c.influence, Damping{Ratios: c.ratios}, nil)
-			refused(t, err, "substructure: "+c.want)
+			refused(t, err, ""+c.want)
 		})
 	}
 }

@@ -24,7 +24,7 @@ const (
 // Held is Static with hysteretic storeys and specimens as they are there, not
 // with their initial stiffness: the displacements, m, at which one force on the
 // given level holds it at displacement and every other level is in balance. The balance is
-// found by modified Newton iteration with the initial stiffness of the whole;
+// found by damped Newton iteration with the initial stiffness of the whole;
 // where parts yield without end it does not exist, which is an error.
 func (s *Structure) Held(level int, displacement float64, specimen SlowForce) ([]float64, error) {
 	x, err := s.Static(level, displacement)
@@ -47,40 +47,74 @@ func (s *Structure) Held(level int, displacement float64, specimen SlowForce) ([
 	if !chol.Factorize(inner) {
 		return nil, errNotHeld
 	}
-	storeys := newHystereticStoreys(s)
-	missing, step := mat.NewVecDense(len(free), nil), mat.NewVecDense(len(free), nil)
-	p := make([]float64, s.n)
-	for range balanceCorrections {
-		s.imbalance(p, x, storeys, specimen)
-		for i, row := range free {
-			missing.SetVec(i, p[row])
-		}
-		if err := chol.SolveVecTo(step, missing); err != nil {
-			return nil, fmt.Errorf("held shape: %w", err)
-		}
-		largest := 0.0
-		for i, row := range free {
-			x[row] += step.AtVec(i)
-			largest = max(largest, math.Abs(step.AtVec(i)))
-		}
-		if !(largest > balanceTolerance*math.Abs(displacement)) {
-			return x, nil
-		}
-	}
-	return nil, errors.New("level: cannot be held there: storeys or specimens yield without end")
+	h := holder{s: s, free: free, storeys: newHystereticStoreys(s), specimen: specimen, p: make([]float64, s.n)}
+	return x, h.balance(x, &chol, balanceTolerance*math.Abs(displacement))
 }
 
-// imbalance writes what is missing from balance at x at rest, N.
-func (s *Structure) imbalance(p, x []float64, storeys hystereticStoreys, specimen SlowForce) {
-	for i := range p {
-		p[i] = 0
-		for j, xj := range x {
-			p[i] -= s.stiffness.At(i, j) * xj
+// holder looks for the balance of the levels that nothing holds.
+type holder struct {
+	s        *Structure
+	free     []int
+	storeys  hystereticStoreys
+	specimen SlowForce
+	p        []float64
+}
+
+// balance moves the free levels of x until a correction is within tolerance, m.
+// A correction that makes the imbalance no smaller, because something stiffens,
+// is halved until it does.
+func (h *holder) balance(x []float64, chol *mat.Cholesky, tolerance float64) error {
+	missing, step := mat.NewVecDense(len(h.free), nil), mat.NewVecDense(len(h.free), nil)
+	trial := append([]float64(nil), x...)
+	worst := h.imbalance(x, missing)
+	for range balanceCorrections {
+		if err := chol.SolveVecTo(step, missing); err != nil {
+			return fmt.Errorf("held shape: %w", err)
+		}
+		largest := mat.Norm(step, math.Inf(1))
+		if math.IsNaN(largest) || math.IsInf(largest, 0) {
+			return errors.New("level: no balance found with it held there")
+		}
+		if largest <= tolerance {
+			return nil
+		}
+		for share := 1.0; ; share /= 2 {
+			for i, row := range h.free {
+				trial[row] = x[row] + share*step.AtVec(i)
+			}
+			if now := h.imbalance(trial, missing); now < worst {
+				worst = now
+				copy(x, trial)
+				break
+			}
+			if share < 1e-9 {
+				// As far down as rounding goes.
+				if largest <= 1e4*tolerance {
+					return nil
+				}
+				return errors.New("level: no balance found with it held there")
+			}
 		}
 	}
-	storeys.start(x)
-	storeys.subtract(p)
-	for j, at := range s.attachments {
-		at.subtract(p, specimen(j, at.extension(x)))
+	return errors.New("level: cannot be held there: storeys or specimens yield without end")
+}
+
+// imbalance writes what the free levels lack for balance at x at rest, N, and
+// returns its size.
+func (h *holder) imbalance(x []float64, missing *mat.VecDense) float64 {
+	for i := range h.p {
+		h.p[i] = 0
+		for j, xj := range x {
+			h.p[i] -= h.s.stiffness.At(i, j) * xj
+		}
 	}
+	h.storeys.start(x)
+	h.storeys.subtract(h.p)
+	for j, at := range h.s.attachments {
+		at.subtract(h.p, h.specimen(j, at.extension(x)))
+	}
+	for i, row := range h.free {
+		missing.SetVec(i, h.p[row])
+	}
+	return mat.Norm(missing, 2)
 }

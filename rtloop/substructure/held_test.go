@@ -58,6 +58,30 @@ func TestHeldIsInBalance(t *testing.T) {
 	}
 }
 
+// Specimens that stiffen far beyond their initial stiffness: a gap that closes and
+// a cubic spring.
+func TestHeldStiffening(t *testing.T) {
+	storeys := []Storey{{Mass: 40e3, Stiffness: 2e6}, {Mass: 40e3, Stiffness: 10e6}, {Mass: 40e3, Stiffness: 10e6}}
+	for name, force := range map[string]func(float64) float64{
+		"gap":   func(e float64) float64 { return 20e6 * math.Copysign(max(0, math.Abs(e)-0.001), e) },
+		"cubic": func(e float64) float64 { return 1e12 * e * e * e },
+	} {
+		s, err := FromStoreys(storeys, Damping{}, []Attachment{{From: 1, To: 2, Stiffness: 0}})
+		if err != nil {
+			t.Fatal(err)
+		}
+		x, err := s.Held(3, 0.03, func(_ int, e float64) float64 { return force(e) })
+		if err != nil {
+			t.Fatalf("%s: %v", name, err)
+		}
+		// Level 1 is pulled by its storey and by storey and specimen above.
+		up := 10e6*(x[1]-x[0]) + force(x[1]-x[0])
+		if d := up - 2e6*x[0]; math.Abs(d) > 1e-6*2e6*x[0] {
+			t.Errorf("%s: level 1 lacks %g N of %g N", name, d, up)
+		}
+	}
+}
+
 func within(a, b []float64, tolerance float64) bool {
 	for i := range a {
 		if math.Abs(a[i]-b[i]) > tolerance {

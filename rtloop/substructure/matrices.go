@@ -55,7 +55,7 @@ func FromMatrices(mass, stiffness, damping *mat.SymDense, influence []float64, d
 		err = s.finish(d, at)
 	}
 	if err != nil {
-		return nil, fmt.Errorf("substructure: %w", err)
+		return nil, err
 	}
 	return s, nil
 }

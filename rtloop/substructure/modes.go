@@ -99,5 +99,5 @@ func (s *Structure) checkHeld(lowest, highest float64) error {
 	if lowest < -heldTolerance*math.Abs(highest) {
 		return fmt.Errorf("stiffness: the whole structure, specimens included, is not positive definite; it gives way at level %d", level)
 	}
-	return fmt.Errorf("stiffness: level %d is a free mechanism: neither a storey nor a specimen holds it in place", level)
+	return fmt.Errorf("stiffness: level %d is a free mechanism: neither a storey nor a specimen holds it at rest (an open gap, a damper and a mass do not)", level)
 }

@@ -35,7 +35,7 @@ func FromStoreys(storeys []Storey, d Damping, at []Attachment) (*Structure, erro
 		err = s.finish(d, at)
 	}
 	if err != nil {
-		return nil, fmt.Errorf("substructure: %w", err)
+		return nil, err
 	}
 	return s, nil
 }

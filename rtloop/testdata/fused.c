@@ -95,6 +95,7 @@ static void run(const struct lane *lane, struct state *state, struct history *h,
 	struct point *const trail = h->trail, *record = h->record;
 	struct work *const past = h->work;
 	const double half = l.dt / 2;
+	const double per_tick = 1 / l.dt;
 
 	for (long i = from; i < to && s.outcome == RUNNING; i++) {
 		/* Predict. */
@@ -116,6 +117,7 @@ static void run(const struct lane *lane, struct state *state, struct history *h,
 			odd += l.weight[k + 1] * targets[(s.target_head - l.ago[k + 1]) & l.target_mask];
 		}
 		const double u = even + odd;
+		const double asked = (u - s.command) * per_tick;
 		s.command = u;
 
 		/* Act. */
@@ -154,12 +156,12 @@ static void run(const struct lane *lane, struct state *state, struct history *h,
 
 		/* Limits. */
 		const double reach = larger(fabs(u), fabs(y)), error = x - y, lag = fabs(error);
-		const double speed = fabs(s.velocity), push = fabs(r);
+		const double speed = fabs(s.velocity), push = fabs(r), hurry = fabs(asked);
 		if (!(reach < DIVERGENCE) || !(push <= DBL_MAX) || !(speed <= DBL_MAX)) {
 			s.outcome = DIVERGED;
 			break;
 		}
-		if (reach > l.stroke || speed > l.velocity || push > l.force || lag > l.error)
+		if (reach > l.stroke || speed > l.velocity || hurry > l.velocity || push > l.force || lag > l.error)
 			s.outcome = TRIPPED;
 
 		/* Tracking. */
@@ -218,6 +220,7 @@ static void run(const struct lane *lane, struct state *state, struct history *h,
 		s.kept++;
 		s.peak_command = larger(fabs(u), s.peak_command);
 		s.peak_velocity = larger(speed, s.peak_velocity);
+		s.peak_hurry = larger(hurry, s.peak_hurry);
 		s.peak_force = larger(push, s.peak_force);
 
 		/* Energy. */

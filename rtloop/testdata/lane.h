@@ -86,7 +86,7 @@ struct state {
 	double b, c, q, lag_v; /* of the actuator; c is the delayed command */
 	double z, dissipated;
 	struct sum work;
-	double peak_command, peak_velocity, peak_force;
+	double peak_command, peak_velocity, peak_hurry, peak_force;
 	struct tracking tracking;
 	struct energy energy;
 	long kept;
@@ -317,6 +317,7 @@ static void put_results(const struct lane *l, const struct state *s, const struc
 	put("force", s->force);
 	put("peak_command", s->peak_command);
 	put("peak_velocity", s->peak_velocity);
+	put("peak_command_velocity", s->peak_hurry);
 	put("peak_force", s->peak_force);
 	put("record_ticks", (double)s->kept);
 	put("record_target", x);

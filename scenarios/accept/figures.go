@@ -163,7 +163,11 @@ func (j *Judgement) room() string {
 		if j.Want == 0 {
 			return "none"
 		}
-		return parts(1-got/j.Want) + " left"
+		left := 1 - got/j.Want
+		if left > 0.1 {
+			left = math.Floor(100*left) / 100 // all is left of a limit only at 0
+		}
+		return parts(left) + " left"
 	case got < 2*j.Want:
 		return parts(got/j.Want-1) + " over"
 	case j.Want == 0:

@@ -31,7 +31,7 @@ func (v *Verdict) WriteText(w io.Writer, colour bool) error {
 	first := &v.Lanes[0]
 	p.printf("%s: %s\n", printable(v.Scenario), printable(v.Title))
 	p.printf("%s\n", v.conditions())
-	p.printf("\n%s  %s lane: %s\n", p.word(first.Pass), first.Name, ending(first, v.Time))
+	p.printf("\n%s  %s lane: %s\n", p.verdict(first), first.Name, ending(first, v.Time))
 	p.limits(first)
 	p.tracking(first, v.Scene)
 	p.reach(first, v.Scene)
@@ -80,7 +80,7 @@ func tally(l *Lane) string {
 	failed, all := len(failures(l)), len(l.Accept)
 	switch {
 	case all == 0:
-		return "no acceptance limits given"
+		return "nothing was judged: no acceptance limits given"
 	case failed == 0:
 		return fmt.Sprintf("limits met: %d of %d", all, all)
 	}
@@ -128,6 +128,15 @@ func (p *page) word(pass bool) string {
 		return word
 	}
 	return "\x1b[" + code + "m" + word + "\x1b[0m"
+}
+
+// verdict is the word for a lane. One that completed without any limit to meet
+// has not passed anything: it is done.
+func (p *page) verdict(l *Lane) string {
+	if l.Pass && len(l.Accept) == 0 {
+		return "DONE"
+	}
+	return p.word(l.Pass)
 }
 
 // table writes a blank line and then rows of cells in columns, the headings
@@ -228,7 +237,7 @@ func limit(scene *scenarios.Scenario, channel int, name string) *kind.Value {
 // the balance of the whole run, in one unit so that it can be added up.
 func (p *page) energy(l *Lane) {
 	e := l.Energy
-	if !e.Input.Defined() {
+	if !e.Input.Defined() || l.Outcome == rtloop.Diverged { // what diverged has no balance to speak of
 		return
 	}
 	window := quantity.Format(float64(e.Window), quantity.Time)
@@ -270,7 +279,7 @@ func (p *page) compare(lanes []Lane) {
 		rows = append(rows, row([]string{fmt.Sprintf("%d. %s", i+1, l.Name), methods(&l),
 			late(measure(l.LaneResult, "delay").Got), share(measure(l.LaneResult, "nrmse").Got)},
 			[]string{margin(l.Energy.MarginMin), share(l.ResponseError)}, trouble(&l)))
-		marks = append(marks, p.word(l.Pass))
+		marks = append(marks, p.verdict(&l))
 	}
 	p.table(rows, marks)
 }

@@ -98,7 +98,10 @@ func numberEnd(s string) int {
 func ParseUnit(text string) (Unit, error) {
 	u := Unit{num: 1, den: 1}
 	s := strings.TrimSpace(text)
-	for first := true; s != ""; first = false {
+	if strings.HasPrefix(s, "1/") {
+		s = s[1:] // "1/mm"
+	}
+	for first := !strings.HasPrefix(s, "/"); s != ""; first = false { // "/mm" divides at once
 		sign := 1
 		if !first {
 			s, sign = separator(s)

@@ -32,6 +32,10 @@ func TestParse(t *testing.T) {
 		{"12 %", 0.12, None},
 		{"100 L/min", 0.1 / 60, Flow},
 		{"3 rad", 3, Angle},
+		{"0.175 1/mm", 175, PerLength},
+		{"0.175 /mm", 175, PerLength},
+		{"2 1/s", 2, Frequency},
+		{"66 gpm", 66 * 3.785411784e-3 / 60, Flow},
 		{"5 N*mm/mm", 5, Force},
 		// National Institute of Standards and Technology, Special Publication
 		// 811, appendix B: 1 in = 0.0254 m, 1 lbf = 4.448222 N, 1 psi = 6894.757 Pa.

@@ -46,7 +46,8 @@ var units = map[string]Unit{
 	"bar": {1e5, 1, Pressure}, "psi": {poundF / (inch * inch), 1, Pressure}, "ksi": {kilo * poundF / (inch * inch), 1, Pressure},
 
 	"J": {1, 1, Energy}, "kJ": {kilo, 1, Energy}, "MJ": {mega, 1, Energy},
-	"L": {1, millePer, Volume}, "l": {1, millePer, Volume}, "cc": {1, microPer, Volume},
+	"gpm": {231 * inch * inch * inch, 60, Flow}, // US gallons, of 231 cubic inches, a minute: valve catalogues
+	"L":   {1, millePer, Volume}, "l": {1, millePer, Volume}, "cc": {1, microPer, Volume},
 
 	"%": {1, 100, None}, "1": {1, 1, None},
 }
