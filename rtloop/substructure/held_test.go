@@ -82,6 +82,40 @@ func TestHeldStiffening(t *testing.T) {
 	}
 }
 
+// A part that has yielded to a ten-thousandth of its stiffness or to nothing
+// holds up neither the search for the balance nor the finding that there is none.
+func TestHeldIsFoundSoon(t *testing.T) {
+	storeys := []Storey{
+		{Mass: 40e3, Stiffness: 2e6, YieldDisplacement: 1e-6, Hardening: 1e-4},
+		{Mass: 40e3, Stiffness: 10e6, YieldDisplacement: 1e-6, Hardening: 1e-4},
+		{Mass: 40e3, Stiffness: 10e6, YieldDisplacement: 1e-6, Hardening: 1e-4},
+	}
+	s, err := FromStoreys(storeys, Damping{}, []Attachment{{From: 0, To: 1, Stiffness: 5e9}})
+	if err != nil {
+		t.Fatal(err)
+	}
+	tried := 0
+	x, err := s.Held(3, 0.03, func(_ int, e float64) float64 {
+		tried++
+		return 5e9 * 1e-6 * math.Tanh(e/1e-6)
+	})
+	if err != nil || tried > 500 {
+		t.Errorf("balance %v, %v after %d tries", x, err, tried)
+	}
+	// The specimen pulls with more than the storeys can hold.
+	for i := range storeys {
+		storeys[i].Hardening = 0
+	}
+	if s, err = FromStoreys(storeys, Damping{}, []Attachment{{From: 0, To: 1}}); err != nil {
+		t.Fatal(err)
+	}
+	tried = 0
+	x, err = s.Held(3, 0.03, func(int, float64) float64 { tried++; return 1e6 })
+	if err == nil || !strings.HasPrefix(err.Error(), "level: ") || tried > 50*balanceCorrections {
+		t.Errorf("balance %v, %v after %d tries", x, err, tried)
+	}
+}
+
 func within(a, b []float64, tolerance float64) bool {
 	for i := range a {
 		if math.Abs(a[i]-b[i]) > tolerance {
