@@ -90,7 +90,7 @@ type PaceView struct {
 	Ticks, Late, Overruns, Shifts int64
 	P50, P99, P999, Max           time.Duration
 	Period                        time.Duration
-	Granted                       []string // what the system granted and refused, in words
+	Granted                       []string // what the system granted and, with a reason behind a colon, refused
 }
 
 // EditorView is the settings of the selected lane and channel.

@@ -14,7 +14,8 @@ specimen is put at risk: it runs the loop of numerical substructure, compensator
 servo-hydraulic actuator and specimen tick by tick, and says with numbers
 whether the test would be accurate and stable.
 
-Without a command it runs the embedded scenario "` + scenarios.Default + `".
+Without a command it opens the dashboard on the embedded scenario "` + scenarios.Default + `"
+where there is a terminal, and else, or with flags of run, runs it headless.
 
 ` + cautions
 
@@ -33,12 +34,16 @@ func newRoot() *cobra.Command {
 		SilenceErrors: true,
 		SilenceUsage:  true,
 		RunE: func(cmd *cobra.Command, _ []string) error {
+			// Flags are those of run, and mean run.
+			if onTerminal() && cmd.Flags().NFlag() == 0 {
+				return bench(cmd, scenarios.Default, nil)
+			}
 			return opts.run(cmd, []string{scenarios.Default})
 		},
 	}
 	opts.flags(root)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
-	root.AddCommand(newRun(), newScenarios(), newDescribe(), newVersion())
+	root.AddCommand(newBench(), newRun(), newPace(), newScenarios(), newDescribe(), newVersion())
 	return root
 }
 

@@ -18,6 +18,8 @@ import (
 	"antelag/scenarios/accept"
 )
 
+const setHelp = "change a setting, `PATH=VALUE`, like damper.compensator.delay=\"12 ms\"; may be repeated"
+
 // runOptions are the flags of run.
 type runOptions struct {
 	sets    []string
@@ -53,7 +55,7 @@ file or the name of an embedded one. The configured lane decides the exit code:
 // flags gives a command the flags of run.
 func (o *runOptions) flags(cmd *cobra.Command) {
 	f := cmd.Flags()
-	f.StringArrayVar(&o.sets, "set", nil, "change a setting, `PATH=VALUE`, like damper.compensator.delay=\"12 ms\"; may be repeated")
+	f.StringArrayVar(&o.sets, "set", nil, setHelp)
 	f.StringVar(&o.log, "log", "", "write every tick to this CSV `file`, with its provenance beside it")
 	f.StringVar(&o.logLane, "log-lane", scenarios.Configured, "the lane that --log writes")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")

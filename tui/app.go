@@ -1,0 +1,170 @@
+package tui
+
+import (
+	"context"
+	"fmt"
+	"runtime"
+	"runtime/debug"
+	"time"
+
+	"github.com/gdamore/tcell/v2"
+
+	"antelag/rtloop/pace"
+	"antelag/scenarios"
+	"antelag/tui/canvas"
+)
+
+// page is what covers the screen.
+type page int
+
+const (
+	pageWelcome page = iota
+	pageDashboard
+	pageHelp
+)
+
+// app is the dashboard on a terminal: it brings together keys, session and
+// drawing, all in one goroutine.
+type app struct {
+	session *session
+	board   *Dashboard
+	grid    *canvas.Grid
+	term    terminal
+	palette *palette
+
+	page    page
+	pressed bool // the mouse button
+	quit    bool
+	dirty   bool // something is to be drawn
+}
+
+// frames is how often the screen is drawn at most, a second.
+const frames = 20
+
+// spare is how many goroutines may run at once beyond the number of cores: the
+// loop, the drawing, the keys and a part of the garbage collector.
+const spare = 4
+
+// Run shows the dashboard of a scenario on the terminal until it is quit or ctx
+// ends. The terminal is left as it was found, whatever happens; a panic comes
+// back as a *Panic. An error that is none means that there was no dashboard.
+func Run(ctx context.Context, s *scenarios.Scenario) error {
+	screen, err := tcell.NewScreen()
+	if err != nil {
+		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
+	}
+	return run(ctx, s, screen, nil)
+}
+
+// run is Run on any terminal and with any clock, nil for the machine's.
+func run(ctx context.Context, s *scenarios.Scenario, term terminal, clock pace.Clock) error {
+	defer roomForTheLoop()()
+	session, err := newSession(s, clock)
+	if err != nil {
+		return err
+	}
+	defer session.close()
+	if err := term.Init(); err != nil {
+		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
+	}
+	return newApp(session, term).loop(ctx)
+}
+
+// roomForTheLoop lets more goroutines run at once than there are cores, and
+// returns what undoes it. The loop must not wait for one of the others to make
+// room when its tick is due.
+func roomForTheLoop() func() {
+	was := runtime.GOMAXPROCS(runtime.NumCPU() + spare)
+	return func() { runtime.GOMAXPROCS(was) }
+}
+
+func newApp(s *session, term terminal) *app {
+	return &app{session: s, board: NewDashboard(), grid: canvas.NewGrid(0, 0), term: term, palette: paletteFor(term.Colors())}
+}
+
+// loop is the dashboard's life, from the first frame on.
+func (a *app) loop(ctx context.Context) (err error) {
+	defer a.term.Fini()
+	defer func() {
+		if r := recover(); r != nil {
+			err = &Panic{Where: "the dashboard", Value: r, Stack: debug.Stack()}
+		}
+	}()
+	a.term.EnableMouse(tcell.MouseButtonEvents)
+	a.term.HideCursor()
+	events, quit := make(chan tcell.Event, 64), make(chan struct{})
+	defer close(quit)
+	go a.term.ChannelEvents(events, quit)
+	frame := time.NewTicker(time.Second / frames)
+	defer frame.Stop()
+
+	a.session.engine.start()
+	a.session.askAll()
+	a.session.log(false, "the loop stands at t = 0 and waits for a key")
+	a.draw()
+	for !a.quit {
+		select {
+		case <-ctx.Done():
+			return nil
+		case ev, open := <-events:
+			if !open {
+				return nil // the terminal is gone
+			}
+			a.event(ev)
+		case x := <-a.session.judge.answers:
+			a.session.judged(&x)
+			a.dirty = true
+		case r := <-a.session.copies:
+			a.session.copied(r)
+			a.dirty = true
+		case p := <-a.session.judge.failed:
+			return p
+		case <-a.session.engine.done:
+			if p := a.session.engine.failed; p != nil {
+				return p
+			}
+			return nil
+		case <-frame.C:
+			if a.session.hear() || a.dirty {
+				a.draw()
+			}
+		}
+	}
+	return nil
+}
+
+// event takes what the terminal says.
+func (a *app) event(ev tcell.Event) {
+	a.dirty = true
+	switch ev := ev.(type) {
+	case *tcell.EventResize:
+		a.term.Sync()
+	case *tcell.EventKey:
+		a.session.hear()
+		a.key(ev)
+	case *tcell.EventMouse:
+		a.session.hear()
+		a.mouse(ev)
+	}
+}
+
+// draw draws one frame.
+func (a *app) draw() {
+	a.dirty = false
+	w, h := a.term.Size()
+	if gw, gh := a.grid.Size(); gw != w || gh != h {
+		a.grid.Resize(w, h)
+	}
+	switch {
+	case w < MinWidth || h < MinHeight:
+		a.grid.Clear()
+		a.board.DrawTooSmall(a.grid)
+	case a.page == pageWelcome:
+		a.board.DrawWelcome(a.session.snapshot(), a.grid)
+	case a.page == pageHelp:
+		a.board.DrawHelp(a.grid)
+	default:
+		a.board.Draw(a.session.snapshot(), a.grid)
+	}
+	a.palette.paint(a.grid, a.term)
+}
