@@ -8,6 +8,7 @@ import (
 	"time"
 
 	"antelag/rtloop"
+	"antelag/scenarios/accept"
 	"antelag/scenarios/quantity"
 	"antelag/tui/canvas"
 )
@@ -19,46 +20,9 @@ const undefined = "–"
 
 func defined(v float64) bool { return !math.IsNaN(v) && !math.IsInf(v, 0) }
 
-// share writes a ratio as a percentage of three significant digits.
-func share(f float64) string {
-	if !defined(f) {
-		return undefined
-	}
-	v := 100 * f
-	switch a := math.Abs(v); {
-	case a == 0:
-		return "0 %"
-	case a < 0.001:
-		return "< 0.001 %"
-	case a >= 1e5:
-		return fmt.Sprintf("%.2e %%", v)
-	default:
-		after := 2 - int(math.Floor(math.Log10(a)))
-		return strconv.FormatFloat(v, 'f', max(0, after), 64) + " %"
-	}
-}
-
-// amplitude writes an amplitude ratio, of which parts in ten thousand count.
-func amplitude(f float64) string {
-	if !defined(f) || f >= 1e3 {
-		return share(f)
-	}
-	return strconv.FormatFloat(100*f, 'f', 2, 64) + " %"
-}
-
-// margin writes an energy margin. How far a loop that blew up was below any
-// margin is of no interest.
-func margin(f float64) string {
-	switch {
-	case !defined(f):
-		return undefined
-	case f < -10:
-		return "< -1000 %"
-	case f > 10:
-		return "> 1000 %"
-	}
-	return strconv.FormatFloat(100*f, 'f', 1, 64) + " %"
-}
+func share(f float64) string     { return accept.Share(rtloop.Figure(f)) }
+func amplitude(f float64) string { return accept.Amplitude(rtloop.Figure(f)) }
+func margin(f float64) string    { return accept.Margin(rtloop.Figure(f)) }
 
 // milliseconds writes the size of a delay to the microsecond; way is its
 // direction in a word, "" when it rounds to none.

@@ -16,8 +16,8 @@ import (
 
 const undefined = "–"
 
-// share writes a ratio as a percentage of three significant digits.
-func share(f rtloop.Figure) string {
+// Share writes a ratio as a percentage of three significant digits.
+func Share(f rtloop.Figure) string {
 	if !f.Defined() {
 		return undefined
 	}
@@ -35,17 +35,17 @@ func share(f rtloop.Figure) string {
 	}
 }
 
-// amplitude writes an amplitude ratio, of which parts in ten thousand count.
-func amplitude(f rtloop.Figure) string {
+// Amplitude writes an amplitude ratio, of which parts in ten thousand count.
+func Amplitude(f rtloop.Figure) string {
 	if !f.Defined() || f >= 1e3 {
-		return share(f)
+		return Share(f)
 	}
 	return strconv.FormatFloat(100*float64(f), 'f', 2, 64) + " %"
 }
 
-// margin writes an energy margin. How far a loop that blew up was below any
+// Margin writes an energy margin. How far a loop that blew up was below any
 // margin is of no interest.
-func margin(f rtloop.Figure) string {
+func Margin(f rtloop.Figure) string {
 	switch {
 	case !f.Defined():
 		return undefined
@@ -57,9 +57,9 @@ func margin(f rtloop.Figure) string {
 	return strconv.FormatFloat(100*float64(f), 'f', 1, 64) + " %"
 }
 
-// late writes a delay in milliseconds to the microsecond, which is finer than
+// Late writes a delay in milliseconds to the microsecond, which is finer than
 // any record can tell, and says its direction in a word.
-func late(f rtloop.Figure) string {
+func Late(f rtloop.Figure) string {
 	if !f.Defined() {
 		return undefined
 	}
@@ -124,13 +124,13 @@ func sameUnit(terms ...rtloop.Figure) []string {
 func (j *Judgement) found() string {
 	switch j.Limit {
 	case "delay":
-		return late(j.Got)
+		return Late(j.Got)
 	case "peak_error":
 		return quantity.Format(float64(j.Got), quantity.Length)
 	case "energy_margin":
-		return margin(j.Got)
+		return Margin(j.Got)
 	}
-	return share(j.Got)
+	return Share(j.Got)
 }
 
 // allowed writes the limit in the unit of found.

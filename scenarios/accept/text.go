@@ -187,7 +187,7 @@ func (p *page) limits(l *Lane) {
 func (p *page) tracking(l *Lane, scene *scenarios.Scenario) {
 	rows := [][]string{{"channel", "compensator", "delay", "amplitude", "error, rms", "error, peak"}}
 	for i, c := range l.Channels {
-		rows = append(rows, []string{c.Name, c.Compensator, late(c.Delay), amplitude(c.AmplitudeRatio), share(c.NRMSE),
+		rows = append(rows, []string{c.Name, c.Compensator, Late(c.Delay), Amplitude(c.AmplitudeRatio), Share(c.NRMSE),
 			within(c.PeakError, quantity.Length, limit(scene, i, "error"))})
 	}
 	p.table(rows, nil)
@@ -216,7 +216,7 @@ func (p *page) response(l *Lane) {
 		}
 		rows := [][]string{{"channel", "frequency", "amplitude", "delay"}}
 		for _, b := range c.Response {
-			rows = append(rows, []string{c.Name, quantity.Format(float64(b.Frequency), quantity.Frequency), amplitude(b.Amplitude), late(b.Delay)})
+			rows = append(rows, []string{c.Name, quantity.Format(float64(b.Frequency), quantity.Frequency), Amplitude(b.Amplitude), Late(b.Delay)})
 		}
 		p.table(rows, nil)
 	}
@@ -241,16 +241,16 @@ func (p *page) energy(l *Lane) {
 		return
 	}
 	window := quantity.Format(float64(e.Window), quantity.Time)
-	final := margin(e.MarginFinal) + " over"
+	final := Margin(e.MarginFinal) + " over"
 	if !e.MarginFinal.Defined() {
 		final = "undefined, too little was damped in"
 	}
 	p.printf("\n  energy  margin at the end %s the last %s\n", final, window)
-	damping := share(e.AddedDamping) + " of critical"
+	damping := Share(e.AddedDamping) + " of critical"
 	if !e.AddedDamping.Defined() {
 		damping = "undefined"
 	}
-	p.printf("          added damping %s; the balance closes within %s\n", damping, strings.TrimPrefix(share(e.BalanceError), "< "))
+	p.printf("          added damping %s; the balance closes within %s\n", damping, strings.TrimPrefix(Share(e.BalanceError), "< "))
 	in := sameUnit(e.Input, e.Kinetic, e.Strain, e.Damped, e.Specimen, e.Injected)
 	p.printf("          input %s = kinetic %s + strain %s + damped %s + specimens %s − injected %s\n",
 		in[0], in[1], in[2], in[3], in[4], in[5])
@@ -277,8 +277,8 @@ func (p *page) compare(lanes []Lane) {
 		[]string{"margin", "response"}, "failed")}, []string{}
 	for i, l := range Rank(lanes) {
 		rows = append(rows, row([]string{fmt.Sprintf("%d. %s", i+1, l.Name), methods(&l),
-			late(measure(l.LaneResult, "delay").Got), share(measure(l.LaneResult, "nrmse").Got)},
-			[]string{margin(l.Energy.MarginMin), share(l.ResponseError)}, trouble(&l)))
+			Late(measure(l.LaneResult, "delay").Got), Share(measure(l.LaneResult, "nrmse").Got)},
+			[]string{Margin(l.Energy.MarginMin), Share(l.ResponseError)}, trouble(&l)))
 		marks = append(marks, p.verdict(&l))
 	}
 	p.table(rows, marks)

@@ -226,13 +226,13 @@ func TestColumnsLineUp(t *testing.T) {
 
 func TestFigures(t *testing.T) {
 	for _, c := range []struct{ got, want string }{
-		{share(0.00935), "0.935 %"}, {share(0.1356), "13.6 %"}, {share(2.71), "271 %"}, {share(-0.000464), "-0.0464 %"},
-		{share(0), "0 %"}, {share(1.6e-14), "< 0.001 %"}, {share(-1.6e-14), "< 0.001 %"}, {share(12345), "1.23e+06 %"}, {share(nan), "–"},
-		{share(0.05), "5.00 %"}, {share(1), "100 %"},
-		{amplitude(0.99798), "99.80 %"}, {amplitude(1.02), "102.00 %"}, {amplitude(nan), "–"}, {amplitude(12345), "1.23e+06 %"},
-		{margin(0.9731), "97.3 %"}, {margin(-1.2), "-120.0 %"}, {margin(-1e6), "< -1000 %"}, {margin(50), "> 1000 %"}, {margin(nan), "–"},
-		{late(0.013988), "13.988 ms late"}, {late(-0.00007946), "0.079 ms early"}, {late(4e-6), "0.004 ms late"},
-		{late(4e-7), "0.000 ms"}, {late(-4e-7), "0.000 ms"}, {late(0), "0.000 ms"}, {late(0.4058), "405.800 ms late"}, {late(nan), "–"},
+		{Share(0.00935), "0.935 %"}, {Share(0.1356), "13.6 %"}, {Share(2.71), "271 %"}, {Share(-0.000464), "-0.0464 %"},
+		{Share(0), "0 %"}, {Share(1.6e-14), "< 0.001 %"}, {Share(-1.6e-14), "< 0.001 %"}, {Share(12345), "1.23e+06 %"}, {Share(nan), "–"},
+		{Share(0.05), "5.00 %"}, {Share(1), "100 %"},
+		{Amplitude(0.99798), "99.80 %"}, {Amplitude(1.02), "102.00 %"}, {Amplitude(nan), "–"}, {Amplitude(12345), "1.23e+06 %"},
+		{Margin(0.9731), "97.3 %"}, {Margin(-1.2), "-120.0 %"}, {Margin(-1e6), "< -1000 %"}, {Margin(50), "> 1000 %"}, {Margin(nan), "–"},
+		{Late(0.013988), "13.988 ms late"}, {Late(-0.00007946), "0.079 ms early"}, {Late(4e-6), "0.004 ms late"},
+		{Late(4e-7), "0.000 ms"}, {Late(-4e-7), "0.000 ms"}, {Late(0), "0.000 ms"}, {Late(0.4058), "405.800 ms late"}, {Late(nan), "–"},
 		{within(0.02439, quantity.Length, &kind.Value{Num: 0.15}), "24.39 mm of 150 mm"}, {within(1.5e5, quantity.Force, nil), "150.0 kN"},
 		{strings.Join(sameUnit(64120, 0.0001, -1, nan), " "), "64.12 kJ 0.00 kJ 0.00 kJ –"},
 		{strings.Join(sameUnit(890.04, -2.166), " "), "890.0 J -2.2 J"}, {strings.Join(sameUnit(0, 0), " "), "0.000 J 0.000 J"},
