@@ -1,6 +1,7 @@
 package pace
 
 import (
+	"runtime"
 	"time"
 
 	"golang.org/x/sys/unix"
@@ -13,7 +14,8 @@ import (
 // delays no tick.
 type machineClock struct {
 	monotonic
-	zero int64 // CLOCK_MONOTONIC when Now is 0, ns
+	zero    int64         // CLOCK_MONOTONIC when Now is 0, ns
+	yielded time.Duration // when Go last had the goroutine
 }
 
 func newClock() Clock {
@@ -33,7 +35,19 @@ func newClock() Clock {
 	return c
 }
 
+// Go takes a goroutine off its thread that has kept it for 10 ms, whatever it
+// does just then, and needs some 50 µs to put it on again. Sleep lets that
+// happen before it comes to that, and where there is time for it.
+const (
+	turn    = 9 * time.Millisecond
+	turning = 100 * time.Microsecond
+)
+
 func (c *machineClock) Sleep(until time.Duration) {
+	if now := c.Now(); now-c.yielded > turn && until-now > turning {
+		c.yielded = now
+		runtime.Gosched()
+	}
 	t := unix.NsecToTimespec(c.zero + int64(until))
 	for c.Now() < until { // signals wake it early
 		_ = unix.ClockNanosleep(unix.CLOCK_MONOTONIC, unix.TIMER_ABSTIME, &t, nil)
