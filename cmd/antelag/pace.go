@@ -127,7 +127,7 @@ func printPace(out io.Writer, r pace.Report, rate float64, asked int64) error {
 	fmt.Fprintln(out, paceSentence(&r, rate))
 	if r.Ticks < asked {
 		fmt.Fprintf(out, "Interrupted after %s of %s; the figures are of what ran.\n",
-			span(float64(r.Ticks)/rate), quantity.Short(float64(asked)/rate, quantity.Time))
+			quantity.Short(float64(r.Ticks)/rate, quantity.Time), quantity.Short(float64(asked)/rate, quantity.Time))
 	}
 	fmt.Fprintln(out)
 	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
@@ -142,10 +142,7 @@ func printPace(out io.Writer, r pace.Report, rate float64, asked int64) error {
 	fmt.Fprintf(t, "late\t%d of %d, by more than a tenth of the period, %s\n", r.Late, r.Ticks, span(pace.Tolerance*r.Period))
 	fmt.Fprintf(t, "overruns\t%d of %d, by more than the period, %s; no tick is skipped\n", r.Overruns, r.Ticks, span(r.Period))
 	moved := "never moved"
-	switch {
-	case r.Shifts == 1:
-		moved = fmt.Sprintf("moved once, by %s", span(r.Shifted.Seconds()))
-	case r.Shifts > 1:
+	if r.Shifts > 0 {
 		moved = fmt.Sprintf("moved %d times, by %s in all", r.Shifts, span(r.Shifted.Seconds()))
 	}
 	fmt.Fprintf(t, "deadlines\t%s\n", moved)

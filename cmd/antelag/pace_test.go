@@ -132,7 +132,7 @@ granted or not     a thread of its own
 		{"bad", bad, []string{"This machine does not hold 2048 Hz: 12 of 20480 ticks came more than a whole period late, the worst 300 ms.\n\n",
 			"\noverruns           12 of 20480, by", "\ndeadlines          moved 2 times, by 555 ms in all\n", "\nwould help         no other work"}},
 		{"stopped", stopped, []string{"This machine holds 2048 Hz: 99.9 % of 5120 ticks came within 20.0 µs of their time, the worst 31.4 µs late.\n" +
-			"Interrupted after 2.50 s of 10 s; the figures are of what ran.\n\n"}},
+			"Interrupted after 2.5 s of 10 s; the figures are of what ran.\n\n"}},
 		{"none", none, []string{"Nothing can be said about 2048 Hz: no tick was released.\nInterrupted after 0 s of 10 s; the figures are of what ran.\n\nlate "}},
 	} {
 		t.Run(c.name, func(t *testing.T) {
