@@ -195,5 +195,5 @@ func sum(m *mat.SymDense, c float64, damping *mat.SymDense, k float64, stiffness
 
 // plus returns x + c·y, rounded twice on every machine: a compiler may not
 // fuse the two where the product is converted. So the paths for one level and
-// for several agree to the last bit, and a run repeats on another machine.
+// for several agree to the last bit on any of them.
 func plus(x, c, y float64) float64 { return x + float64(c*y) }
