@@ -143,7 +143,7 @@ func (e *engine) run() {
 			e.failed = &Panic{Where: "the loop", Value: r, Stack: debug.Stack()}
 		}
 	}()
-	e.pacer.Lock()
+	e.pacer.LockProgram()
 	defer e.pacer.Unlock()
 	for {
 		if e.obey(); e.stopped {
