@@ -28,7 +28,8 @@ type builder struct {
 	initial   []float64
 	window    float64
 	ticks     int64
-	memory    int // ticks that a loop remembers for a compensator that takes over
+	memory    int  // ticks that a loop remembers for a compensator that takes over
+	bare      bool // no gauges
 }
 
 // Build makes everything that runs: the motion, the reference response and
@@ -71,6 +72,30 @@ func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
 		rig.Lanes = append(rig.Lanes, lane)
 	}
 	return rig, nil
+}
+
+// BuildLoop builds the loop of one lane alone, without motion, reference and
+// gauges: for studies of the loop itself. It is at rest at zero once started.
+func (s *Scenario) BuildLoop(lane string) (*rtloop.Loop, error) {
+	if err := s.CheckLane(lane); err != nil {
+		return nil, err
+	}
+	b := &builder{s: s, bare: true}
+	if s.Substructure != nil {
+		if err := b.buildStructure(); err != nil {
+			return nil, b.structureError(err)
+		}
+	}
+	b.window = b.energyWindow()
+	if err := b.check(); err != nil {
+		return nil, err
+	}
+	for i := range s.Lanes {
+		if s.Lanes[i].Name == lane {
+			return b.lane(i)
+		}
+	}
+	return b.lane(-1)
 }
 
 func (b *builder) tick() float64 { return 1 / b.s.Loop.Num("rate") }
@@ -231,7 +256,7 @@ func (b *builder) config(channels []rtloop.Channel) rtloop.Config {
 	cfg := rtloop.Config{
 		Tick: b.tick(), Slowdown: b.s.Loop.Num("slowdown"), Drives: b.s.Excitation.Drives, Level: level,
 		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks, Memory: b.memory,
-		Spectra: b.s.Accept.Has("spectrum_error"), Judge: true,
+		Spectra: b.s.Accept.Has("spectrum_error"), Judge: !b.bare,
 	}
 	if b.s.Substructure != nil {
 		cfg.Integrator, cfg.Method = b.s.Substructure.integrator()
