@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -39,38 +40,81 @@ func (s *Scenario) Build() (*rtloop.Rig, error) { return s.BuildLive(0) }
 // BuildLive is Build for a rig whose compensators may be replaced while it
 // runs: the loops remember so many seconds of physical time for them.
 func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
-	b := &builder{s: s, memory: int(math.Ceil(memory * s.Loop.Num("rate"))), ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
-	motion, err := b.motion()
+	b, rig, err := s.bare()
 	if err != nil {
-		return nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
-	}
-	if s.Substructure != nil {
-		if err := b.buildStructure(); err != nil {
-			return nil, b.structureError(err)
-		}
-		if err := b.release(motion); err != nil {
-			return nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
-		}
-	}
-	b.window = b.energyWindow()
-	if err := b.check(); err != nil {
 		return nil, err
 	}
-	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
-	if rig.Reference, err = b.reference(); err != nil {
-		return nil, err
-	}
+	b.memory = int(math.Ceil(memory * s.Loop.Num("rate")))
 	for i := -1; i < len(s.Lanes); i++ {
-		lane := &rtloop.Lane{Name: Configured}
-		if i >= 0 {
-			lane.Name = s.Lanes[i].Name
-		}
-		if lane.Loop, err = b.lane(i); err != nil {
+		lane, err := b.named(i)
+		if err != nil {
 			return nil, err
 		}
 		rig.Lanes = append(rig.Lanes, lane)
 	}
 	return rig, nil
+}
+
+// BuildBare is Build for a rig that has no lanes yet.
+func (s *Scenario) BuildBare() (*rtloop.Rig, error) {
+	_, rig, err := s.bare()
+	return rig, err
+}
+
+func (s *Scenario) bare() (*builder, *rtloop.Rig, error) {
+	b, motion, err := s.builder(nil)
+	if err != nil {
+		return nil, nil, err
+	}
+	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
+	rig.Reference, err = b.reference()
+	return b, rig, err
+}
+
+// BuildLane makes one lane by name, to run on the rig of a scenario that has the
+// same motion: on nothing but its loop is time spent.
+func (s *Scenario) BuildLane(name string, on *rtloop.Rig) (*rtloop.Lane, error) {
+	if err := s.CheckLane(name); err != nil {
+		return nil, err
+	}
+	b, _, err := s.builder(on.Motion)
+	if err != nil {
+		return nil, err
+	}
+	return b.named(slices.IndexFunc(s.Lanes, func(l Lane) bool { return l.Name == name }))
+}
+
+// builder readies all that the loops of a scenario have in common; motion is
+// made unless there is one.
+func (s *Scenario) builder(motion excitation.Source) (*builder, excitation.Source, error) {
+	b := &builder{s: s, ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
+	if motion == nil {
+		var err error
+		if motion, err = b.motion(); err != nil {
+			return nil, nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
+		}
+	}
+	if s.Substructure != nil {
+		if err := b.buildStructure(); err != nil {
+			return nil, nil, b.structureError(err)
+		}
+		if err := b.release(motion); err != nil {
+			return nil, nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
+		}
+	}
+	b.window = b.energyWindow()
+	return b, motion, b.check()
+}
+
+// named builds lane i; -1 is the configured one.
+func (b *builder) named(i int) (*rtloop.Lane, error) {
+	lane := &rtloop.Lane{Name: Configured}
+	if i >= 0 {
+		lane.Name = b.s.Lanes[i].Name
+	}
+	var err error
+	lane.Loop, err = b.lane(i)
+	return lane, err
 }
 
 func (b *builder) tick() float64 { return 1 / b.s.Loop.Num("rate") }
