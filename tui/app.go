@@ -3,7 +3,6 @@ package tui
 import (
 	"context"
 	"fmt"
-	"runtime"
 	"runtime/debug"
 	"time"
 
@@ -41,10 +40,6 @@ type app struct {
 // frames is how often the screen is drawn at most, a second.
 const frames = 20
 
-// spare is how many goroutines may run at once beyond the number of cores: the
-// loop, the drawing, the keys and a part of the garbage collector.
-const spare = 4
-
 // Run shows the dashboard of a scenario on the terminal until it is quit or ctx
 // ends. The terminal is left as it was found, whatever happens; a panic comes
 // back as a *Panic. An error that is none means that there was no dashboard.
@@ -58,7 +53,6 @@ func Run(ctx context.Context, s *scenarios.Scenario) error {
 
 // run is Run on any terminal and with any clock, nil for the machine's.
 func run(ctx context.Context, s *scenarios.Scenario, term terminal, clock pace.Clock) error {
-	defer roomForTheLoop()()
 	session, err := newSession(s, clock)
 	if err != nil {
 		return err
@@ -68,14 +62,6 @@ func run(ctx context.Context, s *scenarios.Scenario, term terminal, clock pace.C
 		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
 	}
 	return newApp(session, term).loop(ctx)
-}
-
-// roomForTheLoop lets more goroutines run at once than there are cores, and
-// returns what undoes it. The loop must not wait for one of the others to make
-// room when its tick is due.
-func roomForTheLoop() func() {
-	was := runtime.GOMAXPROCS(runtime.NumCPU() + spare)
-	return func() { runtime.GOMAXPROCS(was) }
 }
 
 func newApp(s *session, term terminal) *app {

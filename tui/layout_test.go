@@ -44,7 +44,7 @@ var samples = []struct {
 	name string
 	make func() *Snapshot
 }{
-	{"running", sampleRunningWell}, {"tripped", sampleTripped}, {"diverged", sampleDiverged}, {"paused", samplePaused},
+	{"running", sampleRunningWell}, {"tripped", sampleTripped}, {"diverged", sampleDiverged}, {"paused", samplePaused}, {"at-rest", sampleAtRest},
 	{"editing", sampleEditing}, {"refused", sampleRefused}, {"adaptive", sampleAdaptive}, {"driven", sampleDrivenTarget},
 	{"lanes", sampleManyLanes}, {"start", sampleAtStart}, {"nothing", sampleNothing}, {"asking", sampleAsking},
 }

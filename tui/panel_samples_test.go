@@ -124,6 +124,13 @@ func sampleDiverged() *Snapshot {
 	return s
 }
 
+func sampleAtRest() *Snapshot {
+	s := sampleRunningWell()
+	s.Subspace.Resting = true
+	s.Lanes[0].Delay, s.Lanes[1].Delay = none, none
+	return s
+}
+
 func samplePaused() *Snapshot {
 	s := sampleRunningWell()
 	s.Clock.Paused, s.Clock.Speed, s.Clock.Slowdown = true, 0.25, 4

@@ -72,6 +72,7 @@ type SubspaceView struct {
 	X, Y    []float64 // trail: target and measured, m, oldest first
 	Ellipse gauge.Ellipse
 	Delay   float64 // s, positive late; NaN where undefined
+	Resting bool    // the motion is too small to say anything
 }
 
 // EnergyView is the energy of the selected lane, all channels together.

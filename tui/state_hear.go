@@ -89,7 +89,7 @@ func (s *session) hear() bool {
 		heard = true
 		s.reply(&r)
 	}
-	for {
+	for range sampleSlots { // more may come while these are taken
 		x, ok := s.engine.samples.get()
 		if !ok {
 			break

@@ -105,7 +105,10 @@ func (s *session) subspace() SubspaceView {
 			n = min(n, int(s.seen.window/dt)+1)
 		}
 	}
-	return SubspaceView{X: newest(t.target, n), Y: newest(t.measured, n), Ellipse: e, Delay: s.delayOf(e)}
+	return SubspaceView{
+		X: newest(t.target, n), Y: newest(t.measured, n), Ellipse: e,
+		Delay: s.delayOf(e), Resting: s.seen.status.resting,
+	}
 }
 
 func (s *session) energy() EnergyView {

@@ -28,3 +28,9 @@ func (l *Lane) Figure(limit string) (value float64, dim quantity.Dim) {
 	j := measure(l.LaneResult, limit)
 	return float64(j.Got), j.Dim
 }
+
+// Printable keeps what a file gave for a name from moving the cursor.
+func Printable(s string) string { return printable(s) }
+
+// Word is PASS or FAIL, in colour where it is wanted.
+func Word(pass, colour bool) string { return (&page{colour: colour}).word(pass) }
