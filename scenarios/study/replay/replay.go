@@ -134,7 +134,7 @@ func (p *Replay) belongs(s *scenarios.Scenario) bool {
 		names[n] = true
 	}
 	for _, c := range p.reader.Channels() {
-		if !names[c.Name] {
+		if !names[c.Name] && c.Name != runlog.Unnamed { // a map may leave the name out
 			return false
 		}
 	}
@@ -319,7 +319,7 @@ func (p *Replay) Report() *Report {
 	rep := &Report{
 		Log: p.path, Rate: 1 / p.tick, Slowdown: p.slowdown, Start: rtloop.Figure(p.reader.Start()),
 		Time: rtloop.Figure(float64(max(n-1, 0)) * p.reader.Step()), Samples: n, Window: float64(p.window) * p.reader.Step(),
-		Notes: append(p.reader.Notes(), p.notes...), Energy: p.energy(),
+		Notes: append(append([]string{}, p.reader.Notes()...), p.notes...), Energy: p.energy(),
 	}
 	if p.provenance != nil {
 		rep.Title = p.provenance.Title
