@@ -18,7 +18,7 @@ import (
 // logged writes a log of one channel, of 1000 rows a second: target 10 mm at 2 Hz,
 // measured with the gain and delay that it is told for each time, and the force of
 // a spring of 2 kN/mm on the measured displacement.
-func logged(t *testing.T, seconds int, of func(at float64) (gain, delay float64)) string {
+func logged(t testing.TB, seconds int, of func(at float64) (gain, delay float64)) string {
 	t.Helper()
 	path := filepath.Join(t.TempDir(), "log.csv")
 	var b strings.Builder
