@@ -1,6 +1,9 @@
 package stability
 
-import "math/cmplx"
+import (
+	"math/cmplx"
+	"slices"
+)
 
 // evaluator works a Model out at points z. It belongs to one goroutine.
 type evaluator struct {
@@ -135,4 +138,81 @@ func determinant(n int, a []complex128) complex128 {
 		}
 	}
 	return det
+}
+
+// shape is how the levels move at a pole z: what the forces that keep themselves up
+// there make of the structure.
+func (e *evaluator) shape(z complex128, levels int) []complex128 {
+	z += complex(1e-14, 1e-14) // not where a division by nothing lies
+	e.around(z)
+	n, states := len(e.m.channels), e.m.structure.n
+	forces := e.kept(n)
+	shape := make([]complex128, levels)
+	for i := range shape {
+		for k := range states {
+			q := complex(e.m.structure.q[i*states+k], 0)
+			for j, r := range forces {
+				shape[i] += q * e.sides[j*states+k] * r
+			}
+		}
+	}
+	return normalize(shape)
+}
+
+// kept are the forces that come around as they went, Lr = r, by inverse iteration.
+func (e *evaluator) kept(n int) []complex128 {
+	r := make([]complex128, n)
+	for i := range r {
+		r[i] = complex(1, 0.1*float64(i))
+	}
+	if n == 1 {
+		return r
+	}
+	for range 3 {
+		a, b := make([]complex128, n*n), slices.Clone(r)
+		for i, v := range e.loop {
+			a[i] = -v
+		}
+		for i := range n {
+			a[i*n+i] += 1
+		}
+		eliminate(n, a, b)
+		if b = normalize(b); b == nil {
+			return r
+		}
+		r = b
+	}
+	return r
+}
+
+// eliminate overwrites b by A⁻¹b.
+func eliminate(n int, a, b []complex128) {
+	for k := range n {
+		pivot := k
+		for i := k + 1; i < n; i++ {
+			if size1(a[i*n+k]) > size1(a[pivot*n+k]) {
+				pivot = i
+			}
+		}
+		for j := range n {
+			a[k*n+j], a[pivot*n+j] = a[pivot*n+j], a[k*n+j]
+		}
+		b[k], b[pivot] = b[pivot], b[k]
+		if a[k*n+k] == 0 {
+			a[k*n+k] = 1e-300
+		}
+		for i := k + 1; i < n; i++ {
+			f := a[i*n+k] / a[k*n+k]
+			for j := k; j < n; j++ {
+				a[i*n+j] -= f * a[k*n+j]
+			}
+			b[i] -= f * b[k]
+		}
+	}
+	for i := n - 1; i >= 0; i-- {
+		for j := i + 1; j < n; j++ {
+			b[i] -= a[i*n+j] * b[j]
+		}
+		b[i] /= a[i*n+i]
+	}
 }

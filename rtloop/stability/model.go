@@ -31,6 +31,7 @@ type Model struct {
 	forces    [][]complex128 // b_j, transformed
 	channels  []channelBlock
 	states    int // of all cores
+	levels    int
 	starts    []complex128
 	angles    []float64 // where F may turn quickly
 }
@@ -56,7 +57,7 @@ var errNotFinite = errors.New("a compensator's command does not end with its inp
 // NewModel sets the model of a loop up that Linear has made. The loop is left at
 // rest.
 func NewModel(linear *rtloop.Loop) (*Model, error) {
-	m := &Model{dt: linear.Step(), tick: linear.Period()}
+	m := &Model{dt: linear.Step(), tick: linear.Period(), levels: linear.Structure().N()}
 	rest := linear.State(nil)
 	clear(rest)
 	linear.SetState(rest)

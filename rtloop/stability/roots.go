@@ -1,6 +1,7 @@
 package stability
 
 import (
+	"cmp"
 	"errors"
 	"math"
 	"math/cmplx"
@@ -11,11 +12,11 @@ import (
 // function; the eigenvalues of the System can.
 var ErrUnsettled = errors.New("the poles of the loop cannot be told apart by its characteristic function")
 
-// Poles returns the pole of the largest size, one of each pair, and those others
-// that were found on the way, by falling size. That none is larger is made sure of
-// by counting zeros of F outside a circle through it (argument principle); near
-// are guesses where to look first, nil for none.
-func (m *Model) Poles(near []complex128) ([]complex128, error) {
+// Poles returns poles of the loop, one of each pair, by falling size: the largest,
+// and those others that were found on the way. That none is larger is made sure of
+// by counting zeros of F outside a circle through it (argument principle). near are
+// guesses where to look first.
+func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 	e := newEvaluator(m)
 	var found []complex128
 	for _, z := range append(slices.Clone(near), m.starts...) {
@@ -24,19 +25,17 @@ func (m *Model) Poles(near []complex128) ([]complex128, error) {
 		}
 	}
 	for range 24 {
-		radius := 0.0
+		radius := 0.05
 		for _, r := range found {
 			radius = max(radius, cmplx.Abs(r))
 		}
-		c := circle{e: e, radius: max(radius, 0.05) * (1 + 1e-9), known: found}
+		c := circle{e: e, radius: radius * (1 + 1e-9), known: found}
 		beyond, ok := c.zeros(e.nodes())
 		if !ok {
 			return nil, ErrUnsettled
 		}
 		if beyond == 0 {
-			slices.SortFunc(found, func(a, b complex128) int {
-				return int(math.Copysign(1, cmplx.Abs(b)-cmplx.Abs(a)))
-			})
+			slices.SortFunc(found, func(a, b complex128) int { return cmp.Compare(cmplx.Abs(b), cmplx.Abs(a)) })
 			return found, nil
 		}
 		r, ok := e.beyond(&c, found)
@@ -48,19 +47,43 @@ func (m *Model) Poles(near []complex128) ([]complex128, error) {
 	return nil, ErrUnsettled
 }
 
+// Modes describes what Poles returns: the least damped first, of those no faster
+// than twice the structure's fastest mode, and of the one that decides the spectral
+// radius. Dead times have faster poles without number; those that matter are larger
+// than the structure's.
+func (m *Model) Modes(poles []complex128) []Mode {
+	fastest := 0.0
+	for _, z := range m.starts {
+		fastest = max(fastest, newMode(z, m.dt).Frequency)
+	}
+	e := newEvaluator(m)
+	var modes []Mode
+	for i, z := range poles {
+		if mode := newMode(z, m.dt); i == 0 || mode.Frequency <= 2*fastest {
+			mode.Shape = e.shape(z, m.levels)
+			modes = append(modes, mode)
+		}
+	}
+	slices.SortStableFunc(modes, func(a, b Mode) int { return cmp.Compare(a.Damping, b.Damping) })
+	return modes
+}
+
 // Radius returns the spectral radius; near as in Poles.
 func (m *Model) Radius(near ...complex128) (float64, error) {
-	poles, err := m.Poles(near)
+	poles, err := m.Poles(near...)
 	if err != nil || len(poles) == 0 {
 		return 0, err
 	}
 	return cmplx.Abs(poles[0]), nil
 }
 
+// Pole goes from a guess to a pole near it.
+func (m *Model) Pole(guess complex128) (complex128, bool) { return newEvaluator(m).descend(guess, nil) }
+
 // Unstable returns how many poles are outside the circle of that radius, each of a
 // pair counted.
 func (m *Model) Unstable(radius float64) (int, error) {
-	poles, err := m.Poles(nil)
+	poles, err := m.Poles()
 	if err != nil {
 		return 0, err
 	}
@@ -101,7 +124,7 @@ func (e *evaluator) deflated(z complex128, known []complex128) scaled {
 
 // descend goes from z to a zero of F that is not known yet, by secants.
 func (e *evaluator) descend(z complex128, known []complex128) (complex128, bool) {
-	z0, z1 := z, z*complex(1, 0)+complex(1e-6, 1e-6)
+	z0, z1 := z, z+complex(1e-6, 1e-6)
 	f0, f1 := e.deflated(z0, known), e.deflated(z1, known)
 	for range 60 {
 		if f1.m == 0 {
@@ -140,7 +163,7 @@ func settle(z complex128) complex128 {
 // beyond looks for a zero outside the circle that is not known, from the places on
 // it where F is least.
 func (e *evaluator) beyond(c *circle, known []complex128) (complex128, bool) {
-	slices.SortFunc(c.dips, func(a, b dip) int { return int(math.Copysign(1, a.log-b.log)) })
+	slices.SortFunc(c.dips, func(a, b dip) int { return cmp.Compare(a.log, b.log) })
 	for _, d := range c.dips[:min(12, len(c.dips))] {
 		for _, out := range []float64{1, 1.001, 1.03} {
 			r, ok := e.descend(cmplx.Rect(c.radius*out, d.angle), known)
