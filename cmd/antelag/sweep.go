@@ -55,7 +55,7 @@ parts together. --shard slurm takes i and n from a Slurm job array:
 	f.Int64Var(&o.request.Draws, "draws", 0, "draw the settings of [spread] so many times")
 	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
 	f.StringVar(&o.sampling, "sampling", "", "how draws lie to each other: latin, a Latin hypercube, or independent (default latin)")
-	f.Uint64Var(&o.request.Seed, "seed", 1, "seed of the draws")
+	f.Int64Var(&o.request.Seed, "seed", 1, "seed of the draws")
 	f.StringVar(&o.request.Lane, "lane", scenarios.Configured, "the lane that is judged")
 	f.StringVar(&o.csv, "csv", "", "write every run to this CSV `file`, with its provenance beside it")
 	f.StringVar(&o.shard, "shard", "", "do one part of the runs, `i/n`, or slurm inside a job array")

@@ -326,7 +326,7 @@ type summaryJSON struct {
 	Draws    int64            `json:"draws"`
 	Law      string           `json:"law,omitempty"`
 	Sampling string           `json:"sampling,omitempty"`
-	Seed     uint64           `json:"seed,omitempty"`
+	Seed     int64            `json:"seed,omitempty"`
 	Settings []settingJSON    `json:"settings"`
 	Of       int64            `json:"of"`
 	Runs     int64            `json:"runs"`
