@@ -94,8 +94,8 @@ func (o *sweepOptions) run(cmd *cobra.Command, args []string) error {
 	}
 	there, began := sum.Runs, time.Now()
 	err = o.runs(cmd.Context(), st, first, last, table, sum)
-	cost := study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
-	if e := o.print(cmd.OutOrStdout(), sum, cost); e != nil {
+	sum.Compute = study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
+	if e := o.print(cmd.OutOrStdout(), sum); e != nil {
 		return &failure{e}
 	}
 	switch {
@@ -165,11 +165,11 @@ func (o *sweepOptions) runs(ctx context.Context, st *study.Study, first, last in
 	return err
 }
 
-func (o *sweepOptions) print(out io.Writer, sum *study.Summary, cost study.Compute) error {
+func (o *sweepOptions) print(out io.Writer, sum *study.Summary) error {
 	if o.json {
 		return writeJSON(out, sum)
 	}
-	return sum.WriteText(out, cost, inColour())
+	return sum.WriteText(out, inColour())
 }
 
 // fileError sorts errors about output files: what stands in the way is for the

@@ -176,7 +176,7 @@ func TestRefusedRunsSayWhy(t *testing.T) {
 func wordy(t *testing.T, s *Summary) string {
 	t.Helper()
 	var b strings.Builder
-	if err := s.WriteText(&b, Compute{}, false); err != nil {
+	if err := s.WriteText(&b, false); err != nil {
 		t.Fatal(err)
 	}
 	return b.String()
