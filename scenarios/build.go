@@ -4,7 +4,6 @@ import (
 	"errors"
 	"fmt"
 	"math"
-	"slices"
 	"strconv"
 	"strings"
 
@@ -29,7 +28,8 @@ type builder struct {
 	initial   []float64
 	window    float64
 	ticks     int64
-	memory    int // ticks that a loop remembers for a compensator that takes over
+	memory    int  // ticks that a loop remembers for a compensator that takes over
+	bare      bool // no gauges
 }
 
 // Build makes everything that runs: the motion, the reference response and
@@ -53,35 +53,6 @@ func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
 		rig.Lanes = append(rig.Lanes, lane)
 	}
 	return rig, nil
-}
-
-// BuildBare is Build for a rig that has no lanes yet.
-func (s *Scenario) BuildBare() (*rtloop.Rig, error) {
-	_, rig, err := s.bare()
-	return rig, err
-}
-
-func (s *Scenario) bare() (*builder, *rtloop.Rig, error) {
-	b, motion, err := s.builder(nil)
-	if err != nil {
-		return nil, nil, err
-	}
-	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
-	rig.Reference, err = b.reference()
-	return b, rig, err
-}
-
-// BuildLane makes one lane by name, to run on the rig of a scenario that has the
-// same motion: on nothing but its loop is time spent.
-func (s *Scenario) BuildLane(name string, on *rtloop.Rig) (*rtloop.Lane, error) {
-	if err := s.CheckLane(name); err != nil {
-		return nil, err
-	}
-	b, _, err := s.builder(on.Motion)
-	if err != nil {
-		return nil, err
-	}
-	return b.named(slices.IndexFunc(s.Lanes, func(l Lane) bool { return l.Name == name }))
 }
 
 // builder readies all that the loops of a scenario have in common; motion is
@@ -275,7 +246,7 @@ func (b *builder) config(channels []rtloop.Channel) rtloop.Config {
 	cfg := rtloop.Config{
 		Tick: b.tick(), Slowdown: b.s.Loop.Num("slowdown"), Drives: b.s.Excitation.Drives, Level: level,
 		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks, Memory: b.memory,
-		Spectra: b.s.Accept.Has("spectrum_error"), Judge: true,
+		Spectra: b.s.Accept.Has("spectrum_error"), Judge: !b.bare,
 	}
 	if b.s.Substructure != nil {
 		cfg.Integrator, cfg.Method = b.s.Substructure.integrator()

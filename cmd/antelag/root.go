@@ -43,7 +43,17 @@ func newRoot() *cobra.Command {
 	}
 	opts.flags(root)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
-	root.AddCommand(newBench(), newRun(), newSweep(), newGather(), newPace(), newScenarios(), newDescribe(), newVersion())
+	root.AddCommand(
+		newBench(),
+		newRun(),
+		newSweep(),
+		newGather(),
+		newHandoff(),
+		newPace(),
+		newScenarios(),
+		newDescribe(),
+		newVersion(),
+	)
 	return root
 }
 
