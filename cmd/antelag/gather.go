@@ -28,7 +28,7 @@ have written, and sum them up. All parts must be there, whole and of one study.`
 			if err != nil {
 				return err
 			}
-			if err := o.print(cmd.OutOrStdout(), sum, study.Compute{}); err != nil {
+			if err := o.print(cmd.OutOrStdout(), sum); err != nil {
 				return &failure{err}
 			}
 			if !sum.Pass() {

@@ -55,7 +55,7 @@ parts together. --shard slurm takes i and n from a Slurm job array:
 	f.Int64Var(&o.request.Draws, "draws", 0, "draw the settings of [spread] so many times")
 	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
 	f.StringVar(&o.sampling, "sampling", "", "how draws lie to each other: latin, a Latin hypercube, or independent (default latin)")
-	f.Uint64Var(&o.request.Seed, "seed", 1, "seed of the draws")
+	f.Int64Var(&o.request.Seed, "seed", 1, "seed of the draws")
 	f.StringVar(&o.request.Lane, "lane", scenarios.Configured, "the lane that is judged")
 	f.StringVar(&o.csv, "csv", "", "write every run to this CSV `file`, with its provenance beside it")
 	f.StringVar(&o.shard, "shard", "", "do one part of the runs, `i/n`, or slurm inside a job array")
@@ -94,8 +94,8 @@ func (o *sweepOptions) run(cmd *cobra.Command, args []string) error {
 	}
 	there, began := sum.Runs, time.Now()
 	err = o.runs(cmd.Context(), st, first, last, table, sum)
-	cost := study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
-	if e := o.print(cmd.OutOrStdout(), sum, cost); e != nil {
+	sum.Compute = study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
+	if e := o.print(cmd.OutOrStdout(), sum); e != nil {
 		return &failure{e}
 	}
 	switch {
@@ -165,11 +165,11 @@ func (o *sweepOptions) runs(ctx context.Context, st *study.Study, first, last in
 	return err
 }
 
-func (o *sweepOptions) print(out io.Writer, sum *study.Summary, cost study.Compute) error {
+func (o *sweepOptions) print(out io.Writer, sum *study.Summary) error {
 	if o.json {
 		return writeJSON(out, sum)
 	}
-	return sum.WriteText(out, cost, inColour())
+	return sum.WriteText(out, inColour())
 }
 
 // fileError sorts errors about output files: what stands in the way is for the

@@ -67,10 +67,10 @@ const deviations = 3
 // in the order of the paths, i and, for a Latin hypercube, the number of draws.
 func (st *Study) draw(dst []float64, i int64) []float64 {
 	for k := range st.Spread {
-		u := unit(st.Seed, uint64(k), uint64(i))
+		u := unit(uint64(st.Seed), uint64(k), uint64(i))
 		if st.Sampling != Independent {
 			n := uint64(st.Draws)
-			u = (float64(shuffle(uint64(i), n, mix(st.Seed, uint64(k), 'o'))) + u) / float64(n)
+			u = (float64(shuffle(uint64(i), n, mix(uint64(st.Seed), uint64(k), 'o'))) + u) / float64(n)
 		}
 		dst = append(dst, st.Law.quantile(st.Spread[k].Low, st.Spread[k].High, u))
 	}

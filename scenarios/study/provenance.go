@@ -117,7 +117,7 @@ type recorded struct {
 			Set, Over     []string
 			Draws         int64
 			Law, Sampling string
-			Seed          uint64
+			Seed          int64
 			Shard         string
 		}
 	}

@@ -25,7 +25,7 @@ type Request struct {
 	Draws    int64    // draws from [spread] at every point of the grid; 0: none
 	Law      Law
 	Sampling Sampling
-	Seed     uint64
+	Seed     int64
 }
 
 // Study is a request, checked against its scenario. It does not change and may

@@ -19,6 +19,7 @@ type Summary struct {
 	Figures  []Tally          // of all columns that are no single channel's
 	Points   []Point          // where there are a grid and draws
 	Spans    []Span           // of a grid of one setting: where all runs pass
+	Compute  Compute          // what it cost, for who fills it in
 }
 
 // Tally is one figure over all runs. A run that did not come to its end, and one

@@ -1,7 +1,6 @@
 package study
 
 import (
-	"encoding/json"
 	"fmt"
 	"io"
 	"math"
@@ -16,16 +15,16 @@ import (
 
 // Compute says what a study cost.
 type Compute struct {
-	Wall    float64 // s
-	Runs    int64   // made now; others were there
-	Workers int
+	Wall    float64 `json:"wall_s"`
+	Runs    int64   `json:"runs"` // made now; others were there
+	Workers int     `json:"workers"`
 }
 
 // WriteText writes the summary for people.
-func (s *Summary) WriteText(w io.Writer, c Compute, colour bool) error {
+func (s *Summary) WriteText(w io.Writer, colour bool) error {
 	var b strings.Builder
 	st := s.Study
-	fmt.Fprintf(&b, "%s: %s\n%s\n%s\n", accept.Printable(st.Scenario.Name), accept.Printable(st.Scenario.Title), st.Describe(), s.cost(c))
+	fmt.Fprintf(&b, "%s: %s\n%s\n%s\n", accept.Printable(st.Scenario.Name), accept.Printable(st.Scenario.Title), st.Describe(), s.cost())
 	s.verdict(&b, colour)
 	s.figures(&b, colour)
 	s.varied(&b)
@@ -56,7 +55,8 @@ func (st *Study) Describe() string {
 	return text
 }
 
-func (s *Summary) cost(c Compute) string {
+func (s *Summary) cost() string {
+	c := s.Compute
 	duration := quantity.Short(s.Study.Scenario.Loop.Num("duration"), quantity.Time)
 	text := fmt.Sprintf("%s of %s of test each", count(s.Runs, "run"), duration)
 	if s.Runs < s.Study.Runs() {
@@ -275,107 +275,4 @@ func writeTable(b *strings.Builder, rows [][]string, marks []string) {
 		}
 		fmt.Fprintf(b, "  %s\n", strings.TrimRight(mark+line, " "))
 	}
-}
-
-// MarshalJSON writes the summary with SI figures; what is undefined is null.
-func (s *Summary) MarshalJSON() ([]byte, error) {
-	st := s.Study
-	out := summaryJSON{
-		Scenario: st.Scenario.Name, Lane: st.Lane, Sets: append([]string{}, st.Sets...), Draws: st.Draws,
-		Of: st.Runs(), Runs: s.Runs, Passed: s.Passed, Pass: s.Pass(), Outcomes: s.Outcomes, Limits: s.Limits,
-		Settings: []settingJSON{}, Figures: []tallyJSON{}, Points: []pointJSON{}, Spans: [][2]float64{},
-	}
-	if st.Draws > 0 {
-		out.Law, out.Sampling, out.Seed = string(st.Law), string(st.Sampling), st.Seed
-		if len(st.Grid) == 0 {
-			v := rtloop.Figure(s.AtLeast())
-			out.AtLeast = &v
-		}
-	}
-	for i := range st.Grid {
-		a := &st.Grid[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(a.Path, &a.Setting), a.Low, a.High, a.N, a.Log, false})
-	}
-	for i := range st.Spread {
-		sp := &st.Spread[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(sp.Path, &sp.Setting), sp.Low, sp.High, 0, false, true})
-	}
-	for i := range s.Figures {
-		t := &s.Figures[i]
-		out.Figures = append(out.Figures, tallyJSON{
-			Name: t.Column.Name(), Limit: rtloop.Figure(t.Limit), Failed: t.Failed,
-			Worst: st.extremeJSON(&t.Worst), Best: st.extremeJSON(&t.Best),
-			Quantiles: map[string]rtloop.Figure{"0.5": rtloop.Figure(t.Quantile(0.5)), "0.9": rtloop.Figure(t.Quantile(0.9)), "0.95": rtloop.Figure(t.Quantile(0.95)), "0.99": rtloop.Figure(t.Quantile(0.99))},
-		})
-	}
-	for _, p := range s.Points {
-		if p.sketch == nil {
-			out.Points = append(out.Points, pointJSON{p.Values, p.Runs, p.Passed, rtloop.Figure(p.Worst), rtloop.Figure(p.Most)})
-		}
-	}
-	for _, sp := range s.Spans {
-		out.Spans = append(out.Spans, [2]float64{sp.Low, sp.High})
-	}
-	return json.Marshal(out)
-}
-
-type summaryJSON struct {
-	Scenario string           `json:"scenario"`
-	Lane     string           `json:"lane"`
-	Sets     []string         `json:"set"`
-	Draws    int64            `json:"draws"`
-	Law      string           `json:"law,omitempty"`
-	Sampling string           `json:"sampling,omitempty"`
-	Seed     uint64           `json:"seed,omitempty"`
-	Settings []settingJSON    `json:"settings"`
-	Of       int64            `json:"of"`
-	Runs     int64            `json:"runs"`
-	Passed   int64            `json:"passed"`
-	Pass     bool             `json:"pass"`
-	AtLeast  *rtloop.Figure   `json:"pass_at_least,omitempty"`
-	Outcomes map[string]int64 `json:"outcomes"`
-	Limits   map[string]int64 `json:"limits"`
-	Figures  []tallyJSON      `json:"figures"`
-	Points   []pointJSON      `json:"points"`
-	Spans    [][2]float64     `json:"all_pass"`
-}
-
-type settingJSON struct {
-	Name  string  `json:"name"`
-	Low   float64 `json:"low"`
-	High  float64 `json:"high"`
-	N     int     `json:"values,omitempty"`
-	Log   bool    `json:"log,omitempty"`
-	Drawn bool    `json:"drawn"`
-}
-
-type tallyJSON struct {
-	Name      string                   `json:"name"`
-	Limit     rtloop.Figure            `json:"limit"`
-	Failed    int64                    `json:"failed"`
-	Worst     extremeJSON              `json:"worst"`
-	Best      extremeJSON              `json:"best"`
-	Quantiles map[string]rtloop.Figure `json:"quantiles"`
-}
-
-type extremeJSON struct {
-	Run     int64         `json:"run"`
-	Value   rtloop.Figure `json:"value"`
-	Outcome string        `json:"outcome"`
-	Command string        `json:"command"`
-}
-
-type pointJSON struct {
-	Values []float64     `json:"values"`
-	Runs   int64         `json:"runs"`
-	Passed int64         `json:"passed"`
-	Worst  rtloop.Figure `json:"worst"`
-	Most   rtloop.Figure `json:"q95"`
-}
-
-func (st *Study) extremeJSON(e *Extreme) extremeJSON {
-	if e.Outcome == "" {
-		return extremeJSON{Run: -1, Value: rtloop.Figure(math.NaN())}
-	}
-	return extremeJSON{e.Run, rtloop.Figure(e.Value), e.Outcome, st.Command(e.Run)}
 }
