@@ -46,6 +46,7 @@ func newRoot() *cobra.Command {
 	root.AddCommand(
 		newBench(),
 		newRun(),
+		newReplay(),
 		newSweep(),
 		newGather(),
 		newCheck(),
