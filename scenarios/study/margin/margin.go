@@ -181,13 +181,12 @@ func (a *analyst) modes(r *Report, linear *rtloop.Loop) error {
 // eigenvalues confirms the radius by the state matrix, or finds it where the
 // characteristic function does not.
 func (a *analyst) eigenvalues(r *Report, linear *rtloop.Loop, alone bool) error {
+	if r.States = len(linear.State(nil)); r.States > eigenStates && !alone {
+		return nil
+	}
 	system, err := stability.Linearize(linear)
 	if err != nil {
 		return err
-	}
-	r.States = system.Size()
-	if system.Size() > eigenStates && !alone {
-		return nil
 	}
 	spectrum, err := system.Spectrum()
 	if err != nil {
