@@ -15,11 +15,15 @@ var ErrUnsettled = errors.New("the poles of the loop cannot be told apart by its
 // Poles returns poles of the loop, one of each pair, by falling size: the largest,
 // and those others that were found on the way. That none is larger is made sure of
 // by counting zeros of F outside a circle through it (argument principle). near are
-// guesses where to look first.
+// guesses where to look, like the poles of a loop that is nearly the same; without
+// any it begins at those of the structure with perfect actuators.
 func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 	e := newEvaluator(m)
 	var found []complex128
-	for _, z := range append(slices.Clone(near), m.starts...) {
+	if len(near) == 0 {
+		near = m.starts
+	}
+	for _, z := range near {
 		if r, ok := e.descend(z, found); ok {
 			found = append(found, r)
 		}
@@ -52,20 +56,41 @@ func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 // radius. Dead times have faster poles without number; those that matter are larger
 // than the structure's.
 func (m *Model) Modes(poles []complex128) []Mode {
+	e := newEvaluator(m)
+	var modes []Mode
+	for _, z := range m.slow(poles) {
+		mode := newMode(z, m.dt)
+		mode.Shape = e.shape(z, m.levels)
+		modes = append(modes, mode)
+	}
+	slices.SortStableFunc(modes, func(a, b Mode) int { return cmp.Compare(a.Damping, b.Damping) })
+	return modes
+}
+
+// LeastDamping is the damping ratio of the first of Modes; NaN where there is none.
+func (m *Model) LeastDamping(poles []complex128) float64 {
+	least := math.NaN()
+	for _, z := range m.slow(poles) {
+		if d := newMode(z, m.dt).Damping; !(d >= least) {
+			least = d
+		}
+	}
+	return least
+}
+
+// slow are the largest pole and those no faster than twice the structure's fastest.
+func (m *Model) slow(poles []complex128) []complex128 {
 	fastest := 0.0
 	for _, z := range m.starts {
 		fastest = max(fastest, newMode(z, m.dt).Frequency)
 	}
-	e := newEvaluator(m)
-	var modes []Mode
+	var out []complex128
 	for i, z := range poles {
-		if mode := newMode(z, m.dt); i == 0 || mode.Frequency <= 2*fastest {
-			mode.Shape = e.shape(z, m.levels)
-			modes = append(modes, mode)
+		if i == 0 || newMode(z, m.dt).Frequency <= 2*fastest {
+			out = append(out, z)
 		}
 	}
-	slices.SortStableFunc(modes, func(a, b Mode) int { return cmp.Compare(a.Damping, b.Damping) })
-	return modes
+	return out
 }
 
 // Radius returns the spectral radius; near as in Poles.

@@ -61,3 +61,24 @@ func TestCriticalDelays(t *testing.T) {
 		}
 	}
 }
+
+func BenchmarkMap(b *testing.B) {
+	s, err := scenarios.Load("archive")
+	if err != nil {
+		b.Fatal(err)
+	}
+	for _, text := range []string{"damper.actuator.delay=0 ms:40 ms:60,damper.compensator.delay=0 ms:40 ms:60",
+		"damper.specimen[1].stiffness=0 kN/mm:40 kN/mm:60,substructure.storey[0].mass=20 t:90 t:60"} {
+		x, y, err := ParseMap(s, text)
+		if err != nil {
+			b.Fatal(err)
+		}
+		b.Run(text, func(b *testing.B) {
+			for b.Loop() {
+				if _, err := Map(context.Background(), s, x, y, Options{}); err != nil {
+					b.Fatal(err)
+				}
+			}
+		})
+	}
+}
