@@ -40,33 +40,14 @@ func (s *Scenario) Build() (*rtloop.Rig, error) { return s.BuildLive(0) }
 // BuildLive is Build for a rig whose compensators may be replaced while it
 // runs: the loops remember so many seconds of physical time for them.
 func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
-	b := &builder{s: s, memory: int(math.Ceil(memory * s.Loop.Num("rate"))), ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
-	motion, err := b.motion()
+	b, rig, err := s.bare()
 	if err != nil {
-		return nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
-	}
-	if s.Substructure != nil {
-		if err := b.buildStructure(); err != nil {
-			return nil, b.structureError(err)
-		}
-		if err := b.release(motion); err != nil {
-			return nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
-		}
-	}
-	b.window = b.energyWindow()
-	if err := b.check(); err != nil {
 		return nil, err
 	}
-	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
-	if rig.Reference, err = b.reference(); err != nil {
-		return nil, err
-	}
+	b.memory = int(math.Ceil(memory * s.Loop.Num("rate")))
 	for i := -1; i < len(s.Lanes); i++ {
-		lane := &rtloop.Lane{Name: Configured}
-		if i >= 0 {
-			lane.Name = s.Lanes[i].Name
-		}
-		if lane.Loop, err = b.lane(i); err != nil {
+		lane, err := b.named(i)
+		if err != nil {
 			return nil, err
 		}
 		rig.Lanes = append(rig.Lanes, lane)
@@ -74,28 +55,37 @@ func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
 	return rig, nil
 }
 
-// BuildLoop builds the loop of one lane alone, without motion, reference and
-// gauges: for studies of the loop itself. It is at rest at zero once started.
-func (s *Scenario) BuildLoop(lane string) (*rtloop.Loop, error) {
-	if err := s.CheckLane(lane); err != nil {
-		return nil, err
+// builder readies all that the loops of a scenario have in common; motion is
+// made unless there is one.
+func (s *Scenario) builder(motion excitation.Source) (*builder, excitation.Source, error) {
+	b := &builder{s: s, ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
+	if motion == nil {
+		var err error
+		if motion, err = b.motion(); err != nil {
+			return nil, nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
+		}
 	}
-	b := &builder{s: s, bare: true}
 	if s.Substructure != nil {
 		if err := b.buildStructure(); err != nil {
-			return nil, b.structureError(err)
+			return nil, nil, b.structureError(err)
+		}
+		if err := b.release(motion); err != nil {
+			return nil, nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
 		}
 	}
 	b.window = b.energyWindow()
-	if err := b.check(); err != nil {
-		return nil, err
+	return b, motion, b.check()
+}
+
+// named builds lane i; -1 is the configured one.
+func (b *builder) named(i int) (*rtloop.Lane, error) {
+	lane := &rtloop.Lane{Name: Configured}
+	if i >= 0 {
+		lane.Name = b.s.Lanes[i].Name
 	}
-	for i := range s.Lanes {
-		if s.Lanes[i].Name == lane {
-			return b.lane(i)
-		}
-	}
-	return b.lane(-1)
+	var err error
+	lane.Loop, err = b.lane(i)
+	return lane, err
 }
 
 func (b *builder) tick() float64 { return 1 / b.s.Loop.Num("rate") }
