@@ -46,6 +46,7 @@ func newRoot() *cobra.Command {
 	root.AddCommand(
 		newBench(),
 		newRun(),
+		newMargin(),
 		newSweep(),
 		newGather(),
 		newCheck(),

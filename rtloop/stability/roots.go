@@ -42,7 +42,7 @@ func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 			slices.SortFunc(found, func(a, b complex128) int { return cmp.Compare(cmplx.Abs(b), cmplx.Abs(a)) })
 			return found, nil
 		}
-		r, ok := e.beyond(&c, found)
+		r, ok := e.outermost(&c, beyond, found)
 		if !ok {
 			return nil, ErrUnsettled
 		}
@@ -106,20 +106,21 @@ func (m *Model) Radius(near ...complex128) (float64, error) {
 func (m *Model) Pole(guess complex128) (complex128, bool) { return newEvaluator(m).descend(guess, nil) }
 
 // Unstable returns how many poles are outside the circle of that radius, each of a
-// pair counted.
+// pair counted. It need not find them.
 func (m *Model) Unstable(radius float64) (int, error) {
-	poles, err := m.Poles()
-	if err != nil {
-		return 0, err
-	}
-	// All of those that are larger than the radius are wanted, not the largest.
 	e := newEvaluator(m)
-	c := circle{e: e, radius: radius, known: poles}
+	var found []complex128
+	for _, z := range m.starts {
+		if r, ok := e.descend(z, found); ok {
+			found = append(found, r)
+		}
+	}
+	c := circle{e: e, radius: radius, known: found}
 	n, ok := c.zeros(e.nodes())
 	if !ok {
 		return 0, ErrUnsettled
 	}
-	for _, r := range poles {
+	for _, r := range found {
 		if cmplx.Abs(r) > radius {
 			n += weight(r)
 		}
@@ -185,14 +186,35 @@ func settle(z complex128) complex128 {
 	return complex(real(z), math.Abs(imag(z)))
 }
 
-// beyond looks for a zero outside the circle that is not known, from the places on
-// it where F is least.
-func (e *evaluator) beyond(c *circle, known []complex128) (complex128, bool) {
+// outermost looks for a zero outside the circle that is not known. Where there are
+// many it looks from the largest circle outside which there still is one.
+func (e *evaluator) outermost(c *circle, beyond int, known []complex128) (complex128, bool) {
+	far := *c
+	for share := 0.01; beyond > 2 && share < 1e3; share *= 2 {
+		next := circle{e: e, radius: c.radius * (1 + share), known: known}
+		n, ok := next.zeros(e.nodes())
+		if !ok || n == 0 {
+			if r, ok := e.beyond(&next, c.radius, known); ok {
+				return r, true
+			}
+			break
+		}
+		far, beyond = next, n
+	}
+	if r, ok := e.beyond(&far, c.radius, known); ok {
+		return r, true
+	}
+	return e.beyond(c, c.radius, known)
+}
+
+// beyond looks for a zero outside a radius that is not known, from the places on a
+// circle where F is least.
+func (e *evaluator) beyond(c *circle, radius float64, known []complex128) (complex128, bool) {
 	slices.SortFunc(c.dips, func(a, b dip) int { return cmp.Compare(a.log, b.log) })
 	for _, d := range c.dips[:min(12, len(c.dips))] {
 		for _, out := range []float64{1, 1.001, 1.03} {
 			r, ok := e.descend(cmplx.Rect(c.radius*out, d.angle), known)
-			if ok && cmplx.Abs(r) > c.radius*(1-1e-12) {
+			if ok && cmplx.Abs(r) > radius*(1-1e-12) {
 				return r, true
 			}
 		}

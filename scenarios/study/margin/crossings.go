@@ -146,11 +146,9 @@ func (a *analyst) stableAt(channel int, extra float64) (bool, error) {
 	if err != nil {
 		return false, err
 	}
-	radius, err := radiusOf(m)
-	return radius <= 1+Neutral, err
+	n, err := m.Unstable(1 + Neutral)
+	return n == 0, err
 }
-
-func radiusOf(m *stability.Model) (float64, error) { return m.Radius() }
 
 // refine finds the delay at which the pole of a crossing is on the unit circle when
 // the actuator is built with it, by secants.
@@ -208,11 +206,11 @@ func (a *analyst) gains(channel int, m *Margins) error {
 				probe = mid
 			}
 		}
-		radius, err := radiusOf(a.base.Scaled(channel, probe))
+		n, err := a.base.Scaled(channel, probe).Unstable(1 + Neutral)
 		if err != nil {
 			return err
 		}
-		now := radius <= 1+Neutral
+		now := n == 0
 		if now == stable {
 			continue
 		}

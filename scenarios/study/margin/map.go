@@ -3,6 +3,7 @@ package margin
 import (
 	"context"
 	"errors"
+	"fmt"
 	"math"
 	"runtime"
 	"sync"
@@ -23,6 +24,8 @@ const (
 // Grid is a map over two settings, SI. Values are NaN where the settings make no
 // test.
 type Grid struct {
+	Scenario, Lane string
+
 	X, Y    Range
 	Radius  [][]float64 // spectral radius, [iy][ix]
 	Damping [][]float64 // damping ratio of the least damped mode
@@ -56,13 +59,17 @@ func (g *Grid) Stable(ix, iy int) (stable, ok bool) {
 // itself, so the result is the same for any number of workers. After ctx has ended
 // it returns what there is, with ctx's error.
 func Map(ctx context.Context, s *scenarios.Scenario, x, y Range, o Options) (*Grid, error) {
-	if err := errors.Join(s.CheckLane(o.lane()), x.complete(s), y.complete(s)); err != nil {
+	if err := s.CheckLane(o.lane()); err != nil {
 		return nil, err
 	}
-	if err := checkPair(s, x, y); err != nil {
+	if err := checkRanges(s, &x, &y); err != nil {
 		return nil, err
 	}
-	c := &chart{s: s, o: o, grid: &Grid{X: x, Y: y, AtX: current(s, x.Path), AtY: current(s, y.Path), Measure: o.Measure}}
+	s, err := s.Plain()
+	if err != nil {
+		return nil, err
+	}
+	c := &chart{s: s, o: o, grid: &Grid{Scenario: s.Name, Lane: o.lane(), X: x, Y: y, AtX: current(s, x.Path), AtY: current(s, y.Path), Measure: o.Measure}}
 	g := c.grid
 	for range y.N {
 		g.Radius = append(g.Radius, unknown(x.N))
@@ -80,7 +87,7 @@ func Map(ctx context.Context, s *scenarios.Scenario, x, y Range, o Options) (*Gr
 		return g, err
 	}
 	if g.Refused == x.N*y.N {
-		return nil, errors.Join(errNothing, g.Reason)
+		return nil, fmt.Errorf("%w: %w", errNothing, g.Reason)
 	}
 	return g, nil
 }
@@ -136,7 +143,7 @@ func (c *chart) prepare() error {
 	along := func(r *Range) []*stability.Model {
 		models := make([]*stability.Model, r.N)
 		for i := range models {
-			s, err := c.s.With(r.change(i))
+			s, err := c.s.With(change(r, i))
 			if err == nil {
 				models[i], _, err = a.model(s)
 			}
@@ -147,6 +154,9 @@ func (c *chart) prepare() error {
 	c.alongX, c.alongY = along(&c.grid.X), along(&c.grid.Y)
 	return nil
 }
+
+// errNoTest stands for the reason that is known already.
+var errNoTest = errors.New("the settings make no test")
 
 // refuse counts cells that make no test.
 func (c *chart) refuse(err error, cells int) {
@@ -227,11 +237,11 @@ func (c *chart) advance() {
 func (c *chart) model(ctx context.Context, ix, iy int) (*stability.Model, error) {
 	if c.apart {
 		if c.alongX[ix] == nil || c.alongY[iy] == nil {
-			return nil, c.grid.Reason
+			return nil, errNoTest
 		}
 		return c.alongX[ix].Take(c.alongY[iy], c.ofY), nil
 	}
-	s, err := c.s.With(c.grid.X.change(ix), c.grid.Y.change(iy))
+	s, err := c.s.With(change(&c.grid.X, ix), change(&c.grid.Y, iy))
 	if err != nil {
 		return nil, err
 	}

@@ -47,6 +47,10 @@ func Of(ctx context.Context, s *scenarios.Scenario, o Options) (*Report, error) 
 	if err := s.CheckLane(o.lane()); err != nil {
 		return nil, err
 	}
+	s, err := s.Plain()
+	if err != nil {
+		return nil, err
+	}
 	learned, err := learn(ctx, s, o, o.Progress)
 	if err != nil {
 		return nil, err

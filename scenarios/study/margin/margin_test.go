@@ -67,8 +67,8 @@ func BenchmarkMap(b *testing.B) {
 	if err != nil {
 		b.Fatal(err)
 	}
-	for _, text := range []string{"damper.actuator.delay=0 ms:40 ms:60,damper.compensator.delay=0 ms:40 ms:60",
-		"damper.specimen[1].stiffness=0 kN/mm:40 kN/mm:60,substructure.storey[0].mass=20 t:90 t:60"} {
+	for _, text := range []string{"damper.actuator.delay=0:40 ms:60,damper.compensator.delay=0:40 ms:60",
+		"damper.specimen[1].stiffness=0:40 kN/mm:60,substructure.storey[0].mass=20 t:90 t:60"} {
 		x, y, err := ParseMap(s, text)
 		if err != nil {
 			b.Fatal(err)
