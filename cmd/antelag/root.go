@@ -48,6 +48,7 @@ func newRoot() *cobra.Command {
 		newRun(),
 		newSweep(),
 		newGather(),
+		newCheck(),
 		newHandoff(),
 		newPace(),
 		newScenarios(),

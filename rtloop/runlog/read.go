@@ -77,7 +77,8 @@ type Block struct {
 type Samples [roles][]float64
 
 const (
-	readSize   = 1 << 19 // what is read at once, and what the layout is found from, bytes
+	readSize   = 1 << 19 // what is read at once, bytes
+	headSize   = 1 << 17 // what the layout is found from, bytes
 	longest    = 1 << 20 // longest line, bytes
 	blockSize  = 4096    // samples of a block
 	headRows   = 4096    // rows from which the sampling is found
@@ -111,7 +112,11 @@ func (r *Reader) open(o *Options) error {
 		return fmt.Errorf("%s: is empty", r.path)
 	}
 	var err error
-	if r.layout, err = findLayout(r.buf[:r.end], r.over); err != nil {
+	head := min(r.end, headSize)
+	if r.layout, err = findLayout(r.buf[:head], r.over && head == r.end); err != nil && head < r.end {
+		r.layout, err = findLayout(r.buf[:r.end], r.over)
+	}
+	if err != nil {
 		return r.placed(err)
 	}
 	if r.chosen, err = r.layout.choose(o); err != nil {
