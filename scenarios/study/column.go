@@ -110,6 +110,12 @@ func columns(s *scenarios.Scenario) []Column {
 	return out
 }
 
+// Of returns the figure of a lane, NaN where it is undefined.
+func (c *Column) Of(l *accept.Lane) float64 { return c.get(l) }
+
+// ColumnsOf are the figures that runs of a scenario have.
+func ColumnsOf(s *scenarios.Scenario) []Column { return columns(s) }
+
 // Columns returns the figures that every run of the study has.
 func (st *Study) Columns() []Column { return st.columns }
 
