@@ -130,7 +130,7 @@ func (h *history) subspace() Picture {
 		{Name: "fitted ellipse", X: ex, Y: difference(ey, ex, 1)}}}
 	return Picture{Name: h.name + "-synchronization",
 		Caption: fmt.Sprintf("Synchronization subspace where the target is largest: %s. Late measured displacements turn the trail into a loop that is run through counter-clockwise.", h.ellipseWords(e)),
-		Figure:  figure.Figure{Title: "Channel " + h.name + ": synchronization subspace", Width: 120, Height: 165, Panels: []figure.Panel{trail, wrong}}}
+		Figure:  figure.Figure{Title: "Channel " + h.name + ": synchronization subspace", Width: 120, Height: 138, Panels: []figure.Panel{trail, wrong}}}
 }
 
 func (h *history) ellipseWords(e gauge.Ellipse) string {
@@ -168,7 +168,7 @@ func (h *history) loops() Picture {
 		p.Levels = []figure.Level{{Name: "trips at ±" + quantity.Short(h.tripForce, quantity.Force), Value: h.tripForce * kN}, {Value: -h.tripForce * kN}}
 	}
 	return Picture{Name: h.name + "-force", Caption: "Measured force against measured displacement over the whole run.",
-		Figure: figure.Figure{Title: "Channel " + h.name + ": force against displacement", Width: 130, Height: 95, Panels: []figure.Panel{p}}}
+		Figure: figure.Figure{Title: "Channel " + h.name + ": force against displacement", Width: 120, Height: 78, Panels: []figure.Panel{p}}}
 }
 
 // energyPart shows the energy margin over time and the balance.
