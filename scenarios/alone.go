@@ -19,6 +19,26 @@ func (s *Scenario) Alone(lane string) (*Scenario, error) {
 	return read(doc, s.dir)
 }
 
+// Compensators returns the compensator of every channel in a lane, in the order
+// of the channels.
+func (s *Scenario) Compensators(lane string) ([]Part, error) {
+	if err := s.CheckLane(lane); err != nil {
+		return nil, err
+	}
+	out := make([]Part, len(s.Channels))
+	for j := range s.Channels {
+		out[j] = s.Channels[j].Compensator
+	}
+	for i := range s.Lanes {
+		for j := range s.Channels {
+			if s.Lanes[i].Name == lane && (s.Lanes[i].Channel == "" || s.Lanes[i].Channel == s.Channels[j].Name) {
+				out[j] = s.Lanes[i].Compensator
+			}
+		}
+	}
+	return out, nil
+}
+
 // configure makes the compensator of lane i the configured one of the channels
 // that it is for.
 func (d *document) configure(i int, s *Scenario) {

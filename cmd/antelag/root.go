@@ -43,7 +43,18 @@ func newRoot() *cobra.Command {
 	}
 	opts.flags(root)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
-	root.AddCommand(newBench(), newRun(), newReport(), newPace(), newScenarios(), newDescribe(), newVersion())
+	root.AddCommand(
+		newBench(),
+		newRun(),
+		newSweep(),
+		newGather(),
+		newCheck(),
+		newHandoff(),
+		newReport(), newPace(),
+		newScenarios(),
+		newDescribe(),
+		newVersion(),
+	)
 	return root
 }
 
