@@ -52,7 +52,7 @@ func newRoot() *cobra.Command {
 		newGather(),
 		newCheck(),
 		newHandoff(),
-		newPace(),
+		newReport(), newPace(),
 		newScenarios(),
 		newDescribe(),
 		newVersion(),
