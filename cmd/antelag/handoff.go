@@ -16,7 +16,6 @@ import (
 	"antelag/compensator/handoff"
 	"antelag/scenarios"
 	"antelag/scenarios/kind"
-	"antelag/scenarios/quantity"
 )
 
 // handoffOptions are the flags of handoff.
@@ -150,8 +149,8 @@ func (o *handoffOptions) print(out io.Writer, r *handoff.Report) error {
 	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
 	fmt.Fprintf(t, "channel\tcompensator\tC\tstate\tdouble within\tfloat within\n")
 	for _, c := range r.Channels {
-		fmt.Fprintf(t, "%s\t%s\t%s.h, .c\t%d bytes\t%s\t%s\n", c.Name, c.Compensator, c.Identifier, c.StateBytes,
-			quantity.Short(c.DoubleBound, quantity.Length), quantity.Short(c.FloatBound, quantity.Length))
+		fmt.Fprintf(t, "%s\t%s\t%s.h, .c\t%d bytes\t%.2g m\t%.2g m\n", c.Name, c.Compensator, c.Identifier, c.StateBytes,
+			c.DoubleBound, c.FloatBound)
 	}
 	t.Flush() //nolint:errcheck // the last line tells
 	for _, c := range r.Channels {

@@ -44,7 +44,7 @@ func (c *code) fixedFit(fit compensator.Fit, points int) {
 	c.start += "    (void)y;\n"
 	c.prime = "    (void)u;\n" + pushTwice
 	c.command = pushTwice + "    return dot(weight, &s->past[s->head + 1ul - POINTS], POINTS);\n"
-	c.roundings, c.magnitude = dotRoundings(points), func(p peaks) float64 { return sum * p.x }
+	c.roundings, c.terms = dotRoundings(points), peaks{x: sum}
 	c.reason = "constant, product and one sum more than an eighth of the terms, and ten"
 }
 
@@ -117,6 +117,6 @@ func (c *code) adaptiveFit(comp *compensator.LeastSquaresPolynomial, fit compens
 		sum += math.Abs(p) * row
 	}
 	sum *= fit.Amplitude.High
-	c.roundings, c.magnitude = dotRoundings(len(fit.Weights))+order+5, func(p peaks) float64 { return sum * p.x }
+	c.roundings, c.terms = dotRoundings(len(fit.Weights))+order+5, peaks{x: sum}
 	c.reason = "constants, products and one sum more than an eighth of the points and for each order; delay and amplitude are double in either build"
 }
