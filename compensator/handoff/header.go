@@ -120,13 +120,13 @@ func (u *unit) limits() []string {
 // builds says what the two builds do.
 func (u *unit) builds() []string {
 	c := &u.code
-	float := "The float build commands just the same."
+	float := "The float build, given the same numbers, commands just the same."
 	if c.roundings > 0 {
-		float = fmt.Sprintf("The float build, given the same numbers, is within %d * 2^-24 * (%s) of it, |.| being peaks: %s.", c.roundings, c.terms.text(), c.reason)
+		float = fmt.Sprintf("The float build, given the same numbers, comes within %d * 2^-24 * (%s) of it, |.| being peaks: %s.", c.roundings, c.terms.text(), c.reason)
 	}
 	out := []string{
-		"", fmt.Sprintf("Builds. real is double, or float where ANTELAG_FLOAT is defined. The double build does the operations of the program that it was tuned with in their order"+
-			" and is within %g of the peak command of it. %s The self-test holds both to that.", doublePart, float),
+		"", fmt.Sprintf("Builds. real is double, or float where ANTELAG_FLOAT is defined. The double build does the operations of the program that it was tuned with, in their order,"+
+			" and comes within %g of the peak command of it. %s The self-test holds both to that.", doublePart, float),
 		"Do not compile with -ffast-math: the guard needs NaN to be NaN.",
 		fmt.Sprintf("The state takes about %d bytes in the double build.", u.report.StateBytes),
 	}

@@ -25,7 +25,7 @@ func Write(ctx context.Context, dir string, files []File, force bool) (err error
 	aside, err := os.MkdirTemp(dir, ".handoff-")
 	if err != nil {
 		unmake(made)
-		return naming(err, filepath.Join(dir, files[0].Name))
+		return naming(err, dir)
 	}
 	defer func() {
 		os.RemoveAll(aside) //nolint:errcheck // what is left of it is empty or beside the point
