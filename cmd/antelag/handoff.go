@@ -7,7 +7,6 @@ import (
 	"fmt"
 	"io"
 	"io/fs"
-	"os"
 	"strings"
 	"text/tabwriter"
 
@@ -164,7 +163,7 @@ func (o *handoffOptions) print(out io.Writer, r *handoff.Report) error {
 
 // shellWord writes a path as a shell takes it.
 func shellWord(path string) string {
-	if strings.Trim(path, "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789_-./"+string(os.PathSeparator)) == "" {
+	if strings.Trim(path, "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789_-./") == "" {
 		return path
 	}
 	return "'" + strings.ReplaceAll(path, "'", `'\''`) + "'"

@@ -39,6 +39,7 @@ var adaptiveInverseMethod = method{"adaptive-inverse", func(t tuned) code {
     s->y = in->y;
     return (real)u;
 `,
+		cautions:  learns,
 		roundings: 1, terms: peaks{u: 1},
 		reason: "all is double in either build, and the command is rounded once",
 	}

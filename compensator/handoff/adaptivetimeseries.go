@@ -34,6 +34,7 @@ var adaptiveTimeSeriesMethod = method{"adaptive-time-series", func(t tuned) code
 		prime:   "    learn(s, (double)in->y);\n    s->last = (double)u;\n",
 		command: timeSeriesCommand,
 
+		cautions:  learns,
 		roundings: 1, terms: peaks{u: 1},
 		reason: "all is double in either build, and the command is rounded once",
 	}

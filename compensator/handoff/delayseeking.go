@@ -41,6 +41,7 @@ var delaySeekingMethod = method{"delay-seeking", func(t tuned) code {
     return u;
 `,
 		tables:    table("weight", "ORDER + 1", weights, "c_i = (-1)^i C(n+1, i+1)"),
+		cautions:  learns,
 		roundings: order + 10, terms: peaks{x: sum},
 		reason: "constant, product, seven of the interpolation and one sum for each term; the delay is double in either build",
 	}

@@ -55,6 +55,7 @@ func dotRoundings(points int) int { return points/8 + 12 }
 
 func (c *code) adaptiveFit(comp *compensator.LeastSquaresPolynomial, fit compensator.Fit, t tuned) {
 	order := orderOf(t.values)
+	c.cautions = learns
 	amplitude := t.values.Text("adapt") == "delay-and-amplitude"
 	c.whole("ORDER", order, "N")
 	c.double("RATE", 1/t.tick, "ticks a second")

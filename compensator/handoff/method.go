@@ -80,6 +80,10 @@ type code struct {
 	reason    string
 }
 
+// learns cautions of methods that adapt.
+var learns = []string{"This method learns from what is measured, and the guard cannot tell a sensor that drifts from an actuator that is late:" +
+	" keep the bounds as narrow as the test allows, and watch what it has learned, in the members called adapted."}
+
 // member is one member of a state struct; count is 0 for a plain one.
 type member struct {
 	typ, name string
