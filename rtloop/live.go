@@ -47,6 +47,13 @@ func (l *Loop) Delay(j int) float64 {
 	return math.NaN()
 }
 
+// AtRest reports whether channel j moves so little now that its synchronization
+// subspace says nothing (see gauge.Tracking).
+func (l *Loop) AtRest(j int) bool {
+	t := l.channels[j].tracking
+	return t != nil && t.AtRest()
+}
+
 // Judged reports whether there is energy to judge: a structure is integrated.
 func (l *Loop) Judged() bool { return l.energy != nil }
 

@@ -107,6 +107,28 @@ func TestResponseError(t *testing.T) {
 	}
 }
 
+// A motion that dies out as e^(−ζωt) has, over a trailing window W, the amplitude
+// √(2σ_xx) = A₀·e^(−ζωt)·√((e^(2ζωW) − 1)/(2ζωW)); the window counts as at rest
+// once that is 0.5 % of A₀.
+func TestAtRest(t *testing.T) {
+	const zeta = 0.02
+	l := oscillator{rate: 1024, damping: zeta}.loop(t)
+	l.Start(Drive{})
+	rate := 2 * zeta * oscillatorOmega
+	window := l.Window()
+	want := math.Log(math.Sqrt(math.Expm1(rate*window)/(rate*window))/0.005) / (rate / 2)
+	for !l.AtRest(0) || l.Time() < window {
+		if !l.Tick(Drive{}) {
+			t.Fatal("it never comes to rest")
+		}
+	}
+	// Where in its swing the window ends changes σ_xx by up to 1/(4π·5) of
+	// itself, and with it the instant by 0.016/(2ζω), below a tenth of a second.
+	if got := l.Time(); math.Abs(got-want) > 0.1 {
+		t.Errorf("at rest from %.3f s, want %.3f s", got, want)
+	}
+}
+
 func TestTrips(t *testing.T) {
 	for _, c := range []struct {
 		limit  string

@@ -30,6 +30,7 @@ type status struct {
 	lane, channel int
 	lanes         []laneStatus
 	ellipse       gauge.Ellipse // of the selected channel
+	resting       bool          // the ellipse says nothing
 	coefficients  []compensator.Coefficient
 	dropped       int64
 }
@@ -143,7 +144,7 @@ func (e *engine) run() {
 			e.failed = &Panic{Where: "the loop", Value: r, Stack: debug.Stack()}
 		}
 	}()
-	e.pacer.Lock()
+	e.pacer.LockProgram()
 	defer e.pacer.Unlock()
 	for {
 		if e.obey(); e.stopped {
@@ -205,16 +206,20 @@ func (e *engine) publish() {
 	loop := e.rig.Lanes[e.now.lane].Loop
 	s.lanes = lanes
 	s.coefficients = loop.Coefficients(e.now.channel, coefficients)
-	s.ellipse = loop.Subspace(e.now.channel)
+	s.ellipse, s.resting = loop.Subspace(e.now.channel), loop.AtRest(e.now.channel)
 	s.dropped = e.samples.refused.Load()
 	e.statuses.publish()
 }
 
 func laneNow(l *rtloop.Lane, channel int) laneStatus {
 	loop := l.Loop
+	delay := loop.Delay(channel)
+	if loop.AtRest(channel) {
+		delay = math.NaN()
+	}
 	return laneStatus{
 		name: l.Name, method: loop.Method(channel), outcome: loop.Outcome(), trip: loop.Trip(),
-		nrmse: loop.NRMSE(channel), delay: loop.Delay(channel),
+		nrmse: loop.NRMSE(channel), delay: delay,
 		margin: loop.Margin(), marginMin: loop.MarginMin(), added: loop.AddedDamping(),
 		response: l.ResponseError(), judged: loop.Judged(),
 	}

@@ -7,6 +7,7 @@ import (
 	"runtime/debug"
 	"time"
 
+	"antelag/rtloop/pace"
 	"antelag/scenarios"
 	"antelag/scenarios/accept"
 )
@@ -39,10 +40,8 @@ type point struct {
 
 // judge answers questions in the background, the newest one only: a new
 // question cancels what is being done about the last. There is one worker less
-// than there are cores, so that the loop keeps its own. Their threads have
-// ordinary priority: one that the system would not let run could not be
-// stopped either, and Go now and then stops all threads, the loop's too, until
-// the last has stopped.
+// than there are cores, so that the loop keeps its own, and they compute in the
+// background.
 type judge struct {
 	answers chan answer
 	failed  chan *Panic
@@ -81,6 +80,7 @@ func newJudge() *judge {
 // work runs tasks until the judge is closed.
 func (j *judge) work() {
 	defer j.guard()
+	defer pace.Background()()
 	for {
 		select {
 		case <-j.quit:

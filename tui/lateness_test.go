@@ -29,7 +29,6 @@ func lateness(b *testing.B, draws, edits bool) {
 	if err != nil {
 		b.Fatal(err)
 	}
-	defer roomForTheLoop()()
 	defer session.close()
 	judged := load(b, scenarios.Default)
 	session.judge.cancel()

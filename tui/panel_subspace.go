@@ -47,6 +47,9 @@ func (d *Dashboard) drawSubspace(s *Snapshot, b box) {
 
 // subspaceWords says what the ellipse says.
 func subspaceWords(v *SubspaceView) []span {
+	if v.Resting {
+		return []span{{"at rest", canvas.Dim}}
+	}
 	delay := span{"delay undefined", canvas.Dim}
 	if defined(v.Delay) {
 		size, way := milliseconds(v.Delay)

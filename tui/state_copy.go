@@ -9,6 +9,7 @@ import (
 	"strings"
 
 	"antelag/rtloop"
+	"antelag/rtloop/pace"
 	"antelag/scenarios"
 )
 
@@ -83,6 +84,7 @@ func (s *session) readyCopy() {
 	began, edits, lead, engine, copies, judge := c.began, c.edits, c.lead, s.engine, s.copies, s.judge
 	go func() {
 		defer judge.guard()
+		defer pace.Background()()
 		copies <- engine.catchUp(ctx, began, edits, lead)
 	}()
 }

@@ -105,13 +105,19 @@ func (s *session) subspace() SubspaceView {
 			n = min(n, int(s.seen.window/dt)+1)
 		}
 	}
-	return SubspaceView{X: newest(t.target, n), Y: newest(t.measured, n), Ellipse: e, Delay: s.delayOf(e)}
+	return SubspaceView{
+		X: newest(t.target, n), Y: newest(t.measured, n), Ellipse: e,
+		Delay: s.delayOf(e), Resting: s.seen.status.resting,
+	}
 }
+
+// noEnergy is said where the energy margin would stand.
+const noEnergy = "The target is driven: there is no structure whose energy could be judged."
 
 func (s *session) energy() EnergyView {
 	nan := math.NaN()
 	v := EnergyView{
-		Structure: s.now.Substructure != nil, Margin: nan, MarginMin: nan, AddedDamping: nan,
+		Structure: s.now.Substructure != nil, Missing: noEnergy, Margin: nan, MarginMin: nan, AddedDamping: nan,
 		Limit: limitOf(s.now, "energy_margin"),
 	}
 	if s.lane < len(s.seen.status.lanes) {

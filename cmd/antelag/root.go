@@ -43,7 +43,18 @@ func newRoot() *cobra.Command {
 	}
 	opts.flags(root)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
-	root.AddCommand(newBench(), newRun(), newHandoff(), newPace(), newScenarios(), newDescribe(), newVersion())
+	root.AddCommand(
+		newBench(),
+		newRun(),
+		newSweep(),
+		newGather(),
+		newCheck(),
+		newHandoff(),
+		newPace(),
+		newScenarios(),
+		newDescribe(),
+		newVersion(),
+	)
 	return root
 }
 

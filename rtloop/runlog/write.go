@@ -1,6 +1,7 @@
-// Package runlog writes the log of a test: a CSV file with one header row and
-// no comments, so that any tool reads it, and beside it a TOML file that says
-// where the log came from.
+// Package runlog writes the log of a test, and reads that and the logs of others.
+//
+// A log is a CSV file with one header row and no comments, so that any tool reads
+// it, and beside it a TOML file that says where the log came from.
 //
 // Columns: time_s in model seconds; ground_m_s2 or applied_N as the excitation
 // drives, or neither; for each channel target_m, command_m, measured_m and
@@ -8,6 +9,9 @@
 // undefined. Row k is time t_k: target, command and measured are those meant
 // for and found at t_k; row 0 is the start. Numbers have full float64
 // precision.
+//
+// Reader reads any table of numbers with time stamps or a rate, and gives it out
+// evenly sampled and in SI. It knows nothing of scenarios or gauges.
 package runlog
 
 import (

@@ -28,3 +28,18 @@ func (l *Lane) Figure(limit string) (value float64, dim quantity.Dim) {
 	j := measure(l.LaneResult, limit)
 	return float64(j.Got), j.Dim
 }
+
+// Printable keeps what a file gave for a name from moving the cursor.
+func Printable(s string) string { return printable(s) }
+
+// Word is a verdict in one word of four letters.
+func Word(pass, colour bool) string {
+	word, code := "FAIL", "31;1"
+	if pass {
+		word, code = "PASS", "32;1"
+	}
+	if !colour {
+		return word
+	}
+	return "\x1b[" + code + "m" + word + "\x1b[0m"
+}
