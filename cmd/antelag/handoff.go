@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"io"
 	"io/fs"
+	"path/filepath"
 	"strings"
 	"text/tabwriter"
 
@@ -72,6 +73,11 @@ func (o *handoffOptions) run(cmd *cobra.Command, args []string) error {
 	if err != nil {
 		return err
 	}
+	for _, f := range files {
+		if path := filepath.Join(o.dir, f.Name); sameFile(path, args[0]) {
+			return fmt.Errorf("-o: %s is the scenario itself; choose another directory", path)
+		}
+	}
 	if err := o.write(cmd.Context(), files); err != nil {
 		return err
 	}
@@ -88,11 +94,18 @@ func (o *handoffOptions) run(cmd *cobra.Command, args []string) error {
 
 // load reads the scenario and picks what is handed over.
 func (o *handoffOptions) load(name string) (*handoff.Test, error) {
-	s, err := (&runOptions{sets: o.sets, log: "-"}).load([]string{name})
+	changes, err := parseChanges(o.sets)
 	if err != nil {
 		return nil, err
 	}
-	return o.test(s[0])
+	s, err := scenarios.Load(name, changes...)
+	if err != nil {
+		return nil, err
+	}
+	if _, err := s.Build(); err != nil { // its errors know the line
+		return nil, err
+	}
+	return o.test(s)
 }
 
 func (o *handoffOptions) test(s *scenarios.Scenario) (*handoff.Test, error) {

@@ -115,6 +115,7 @@ func TestHandoffRefuses(t *testing.T) {
 	t.Parallel()
 	dir := folder(t, "rig.toml", rig, "file", "x\n", "bad.toml", strings.Replace(rig, "storey\"", "storey", 1))
 	antelag(t, dir, "handoff", "rig.toml", "-o", "there").good(t)
+	write(t, filepath.Join(dir, "scenario.toml"), rig)
 	before := listing(t, dir)
 	for _, c := range []struct {
 		args []string
@@ -132,6 +133,7 @@ func TestHandoffRefuses(t *testing.T) {
 		{[]string{"rig.toml", "-o", "x", "--set", "damper.compensator.kind=adaptive-time-series", "--set", "damper.compensator.cutoff=500 Hz"}, exitUsage, "cutoff"},
 		{[]string{"rig.toml", "-o", "there"}, exitUsage, "-o: there/antelag_damper.h: file already exists; --force overwrites it"},
 		{[]string{"rig.toml", "-o", "file", "--force"}, exitUsage, "-o: file: file already exists, and is no directory"},
+		{[]string{"scenario.toml", "-o", ".", "--force"}, exitUsage, "-o: scenario.toml is the scenario itself"},
 		{[]string{"rig.toml", "-o", "file/x"}, exitFail, "-o: "},
 		{[]string{"rig.toml", "-o", "/proc/self/nowhere"}, exitFail, "-o: mkdir /proc"},
 	} {
