@@ -186,25 +186,37 @@ func settle(z complex128) complex128 {
 	return complex(real(z), math.Abs(imag(z)))
 }
 
-// outermost looks for a zero outside the circle that is not known. Where there are
-// many it looks from the largest circle outside which there still is one.
+// outermost looks for a zero outside the circle that is not known: there, and, where
+// that leads nowhere or there are many, between the largest circle outside which
+// there is one and the smallest outside which there is none, drawn closer and closer.
 func (e *evaluator) outermost(c *circle, beyond int, known []complex128) (complex128, bool) {
-	far := *c
-	for share := 0.01; beyond > 2 && share < 1e3; share *= 2 {
-		next := circle{e: e, radius: c.radius * (1 + share), known: known}
+	if beyond <= 2 {
+		if r, ok := e.beyond(c, c.radius, known); ok {
+			return r, true
+		}
+	}
+	low, high := c.radius, 0.0
+	next := circle{e: e, known: known}
+	for share, step := 0.01, 0; step < 24; step++ {
+		if high == 0 {
+			next.radius = c.radius * (1 + share)
+			share *= 2
+		} else {
+			next.radius = math.Sqrt(low * high)
+		}
 		n, ok := next.zeros(e.nodes())
-		if !ok || n == 0 {
+		if !ok || high > 0 || n == 0 {
 			if r, ok := e.beyond(&next, c.radius, known); ok {
 				return r, true
 			}
-			break
 		}
-		far, beyond = next, n
+		if ok && n > 0 {
+			low = next.radius
+		} else {
+			high = next.radius
+		}
 	}
-	if r, ok := e.beyond(&far, c.radius, known); ok {
-		return r, true
-	}
-	return e.beyond(c, c.radius, known)
+	return 0, false
 }
 
 // beyond looks for a zero outside a radius that is not known, from the places on a
