@@ -117,6 +117,14 @@ func TestMapsAndUnitsThatAreRefused(t *testing.T) {
 	}
 }
 
+// A column of row numbers is no time in seconds; that may be so, but it is said.
+func TestRowNumbersForTimes(t *testing.T) {
+	w, err := readWhole(lab(t, "time,target [m]\n1,0\n2,1\n3,2\n"), Options{})
+	if err != nil || !strings.Contains(w.notes, "rows come every 1 s; if the time column counts rows") {
+		t.Errorf("%v, %q", err, w.notes)
+	}
+}
+
 // Where rows are spaced evenly and only their stamps are rounded, samples are the
 // rows themselves at the true rate. Stamps of a millisecond at 2048 Hz, rounded or
 // cut off, and twenty rows to a stamp of a hundredth of a second.
