@@ -42,6 +42,12 @@ type Compensator interface {
 	// methods what follows from the settings, for adaptive ones the adapted
 	// values. Appending to a slice with room allocates nothing.
 	Coefficients(dst []Coefficient) []Coefficient
+	// Memory calls each for every past value that commands are made of with the
+	// coefficients of now, always in the same order, pasts with the newest first.
+	// each may read it or write it: to write what was read takes a run up again
+	// to the last bit. What a method learns, and learns from, is no part of it;
+	// see Adaptive.
+	Memory(each func(*float64))
 }
 
 // Coefficient is one named figure of a compensator, SI.

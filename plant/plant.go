@@ -33,6 +33,9 @@ type Actuator interface {
 	// its end), moves the specimen along, and returns the displacement, m, and
 	// velocity, m/s, at the end of the tick.
 	Advance(u float64, s *Specimen) (y, v float64)
+	// Memory visits what is carried from tick to tick, but the specimen's part:
+	// see Specimen.Memory.
+	Memory(each func(*float64))
 }
 
 // NewActuator builds an actuator from resolved settings. An error names the
@@ -61,6 +64,11 @@ type Element interface {
 	// meets a sudden small move from rest at zero: what modes and integrators
 	// with an initial stiffness count.
 	Stiffness() float64
+	// Memory visits what is carried from tick to tick; see Specimen.Memory.
+	Memory(each func(*float64))
+	// Tangent returns the linear element, at rest at zero, that this one is for
+	// small motions about rest there. The error says why there is none.
+	Tangent() (Element, error)
 }
 
 // Previewer is an Element that can tell beforehand what it would resist. An

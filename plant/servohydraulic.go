@@ -121,7 +121,8 @@ type ServoHydraulic struct {
 	friction, perCreep    float64 // F, and F/creep
 	valveOmega, valveZeta float64
 	kp, ki, kd, kdp       float64
-	least                 int // sub-steps a tick at least
+	least                 int  // sub-steps a tick at least
+	exact                 bool // balance to rounding, see Refine
 	steps                 servoSteps
 	state                 servoState
 }

@@ -103,6 +103,8 @@ func (p *push) Advance(_, _, _ float64) float64      { return p.f }
 func (p *push) Preview(_, _, _ float64) float64      { return p.f }
 func (p *push) Energy() (stored, dissipated float64) { return 0, 0 }
 func (p *push) Stiffness() float64                   { return 0 }
+func (p *push) Memory(func(*float64))                {}
+func (p *push) Tangent() (Element, error)            { return p, nil }
 
 // noLoad is the no-load speed of the default actuator, Q_R·√(p_s/p_R)/A
 // (Merritt 1967).

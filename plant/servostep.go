@@ -38,7 +38,9 @@ func (p *ServoHydraulic) cut(n int, mass, stiffness float64) servoSteps {
 	s.leak = 1 + s.ko*p.leakage
 	// Forces balance to 1e-11 of the stall force, or as well as they can where
 	// a stiff specimen's force is rounded with its displacement.
-	s.tol = 1e-11 * s.k * p.area * p.supply
+	if !p.exact {
+		s.tol = 1e-11 * s.k * p.area * p.supply
+	}
 	s.round = 4e-16 * s.k * stiffness
 	s.slope = mass + s.k*(s.koa*p.area/s.leak+p.perCreep+s.k*stiffness)
 	return s

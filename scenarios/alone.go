@@ -19,6 +19,26 @@ func (s *Scenario) Alone(lane string) (*Scenario, error) {
 	return read(doc, s.dir)
 }
 
+// Compensators returns the compensator of every channel in a lane, in the order
+// of the channels.
+func (s *Scenario) Compensators(lane string) ([]Part, error) {
+	if err := s.CheckLane(lane); err != nil {
+		return nil, err
+	}
+	out := make([]Part, len(s.Channels))
+	for j := range s.Channels {
+		out[j] = s.Channels[j].Compensator
+	}
+	for i := range s.Lanes {
+		for j := range s.Channels {
+			if s.Lanes[i].Name == lane && (s.Lanes[i].Channel == "" || s.Lanes[i].Channel == s.Channels[j].Name) {
+				out[j] = s.Lanes[i].Compensator
+			}
+		}
+	}
+	return out, nil
+}
+
 // configure makes the compensator of lane i the configured one of the channels
 // that it is for.
 func (d *document) configure(i int, s *Scenario) {
@@ -65,5 +85,16 @@ func (s *Scenario) WithLane(name, from, channel string) (*Scenario, error) {
 		}
 	}
 	doc.tree["lane"] = append(lanes, table)
+	return read(doc, s.dir)
+}
+
+// Plain returns the scenario without [spread], so that settings may be changed
+// without minding how far they are meant to spread.
+func (s *Scenario) Plain() (*Scenario, error) {
+	if len(s.Spread) == 0 {
+		return s, nil
+	}
+	doc := s.doc.clone()
+	delete(doc.tree, "spread")
 	return read(doc, s.dir)
 }

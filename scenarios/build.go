@@ -28,7 +28,8 @@ type builder struct {
 	initial   []float64
 	window    float64
 	ticks     int64
-	memory    int // ticks that a loop remembers for a compensator that takes over
+	memory    int  // ticks that a loop remembers for a compensator that takes over
+	bare      bool // no gauges
 }
 
 // Build makes everything that runs: the motion, the reference response and
@@ -39,38 +40,52 @@ func (s *Scenario) Build() (*rtloop.Rig, error) { return s.BuildLive(0) }
 // BuildLive is Build for a rig whose compensators may be replaced while it
 // runs: the loops remember so many seconds of physical time for them.
 func (s *Scenario) BuildLive(memory float64) (*rtloop.Rig, error) {
-	b := &builder{s: s, memory: int(math.Ceil(memory * s.Loop.Num("rate"))), ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
-	motion, err := b.motion()
+	b, rig, err := s.bare()
 	if err != nil {
-		return nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
-	}
-	if s.Substructure != nil {
-		if err := b.buildStructure(); err != nil {
-			return nil, b.structureError(err)
-		}
-		if err := b.release(motion); err != nil {
-			return nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
-		}
-	}
-	b.window = b.energyWindow()
-	if err := b.check(); err != nil {
 		return nil, err
 	}
-	rig := &rtloop.Rig{Motion: motion, Ticks: b.ticks, Step: b.step()}
-	if rig.Reference, err = b.reference(); err != nil {
-		return nil, err
-	}
+	b.memory = int(math.Ceil(memory * s.Loop.Num("rate")))
 	for i := -1; i < len(s.Lanes); i++ {
-		lane := &rtloop.Lane{Name: Configured}
-		if i >= 0 {
-			lane.Name = s.Lanes[i].Name
-		}
-		if lane.Loop, err = b.lane(i); err != nil {
+		lane, err := b.named(i)
+		if err != nil {
 			return nil, err
 		}
 		rig.Lanes = append(rig.Lanes, lane)
 	}
 	return rig, nil
+}
+
+// builder readies all that the loops of a scenario have in common; motion is
+// made unless there is one.
+func (s *Scenario) builder(motion excitation.Source) (*builder, excitation.Source, error) {
+	b := &builder{s: s, ticks: int64(math.Round(s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")))}
+	if motion == nil {
+		var err error
+		if motion, err = b.motion(); err != nil {
+			return nil, nil, s.doc.settingError("excitation", s.Excitation.kind(), err)
+		}
+	}
+	if s.Substructure != nil {
+		if err := b.buildStructure(); err != nil {
+			return nil, nil, b.structureError(err)
+		}
+		if err := b.release(motion); err != nil {
+			return nil, nil, s.doc.settingError("excitation", s.Excitation.Kind, err)
+		}
+	}
+	b.window = b.energyWindow()
+	return b, motion, b.check()
+}
+
+// named builds lane i; -1 is the configured one.
+func (b *builder) named(i int) (*rtloop.Lane, error) {
+	lane := &rtloop.Lane{Name: Configured}
+	if i >= 0 {
+		lane.Name = b.s.Lanes[i].Name
+	}
+	var err error
+	lane.Loop, err = b.lane(i)
+	return lane, err
 }
 
 func (b *builder) tick() float64 { return 1 / b.s.Loop.Num("rate") }
@@ -231,7 +246,7 @@ func (b *builder) config(channels []rtloop.Channel) rtloop.Config {
 	cfg := rtloop.Config{
 		Tick: b.tick(), Slowdown: b.s.Loop.Num("slowdown"), Drives: b.s.Excitation.Drives, Level: level,
 		Structure: b.structure, Initial: b.initial, Channels: channels, Window: b.window, Ticks: b.ticks, Memory: b.memory,
-		Spectra: b.s.Accept.Has("spectrum_error"), Judge: true,
+		Spectra: b.s.Accept.Has("spectrum_error"), Judge: !b.bare,
 	}
 	if b.s.Substructure != nil {
 		cfg.Integrator, cfg.Method = b.s.Substructure.integrator()
@@ -311,25 +326,31 @@ func buildPart[B any](table *kind.Table[B], name string, given kind.Values) (fou
 func (b *builder) lane(i int) (*rtloop.Loop, error) {
 	var channels []rtloop.Channel
 	for j := range b.s.Channels {
-		part, path := b.s.Channels[j].Compensator, "channel["+strconv.Itoa(j)+"].compensator"
-		if i >= 0 && (b.s.Lanes[i].Channel == "" || b.s.Lanes[i].Channel == b.s.Channels[j].Name) {
-			part, path = b.s.Lanes[i].Compensator, "lane["+strconv.Itoa(i)+"].compensator"
-		}
-		c, err := b.channel(j)
+		c, err := b.compensated(i, j)
 		if err != nil {
 			return nil, err
-		}
-		c.Method = part.Kind.Name
-		comp, err := buildPart(&compensator.Kinds, part.Kind.Name, part.Values)
-		if err == nil {
-			c.Compensator, err = comp.New(b.tick(), comp.values)
-		}
-		if err != nil {
-			return nil, b.s.doc.settingError(path, part.Kind, err)
 		}
 		channels = append(channels, c)
 	}
 	return b.loop(b.config(channels))
+}
+
+// compensated builds channel j with the compensator that lane i has there.
+func (b *builder) compensated(i, j int) (rtloop.Channel, error) {
+	part, path := b.s.Channels[j].Compensator, "channel["+strconv.Itoa(j)+"].compensator"
+	if i >= 0 && (b.s.Lanes[i].Channel == "" || b.s.Lanes[i].Channel == b.s.Channels[j].Name) {
+		part, path = b.s.Lanes[i].Compensator, "lane["+strconv.Itoa(i)+"].compensator"
+	}
+	c, err := b.channel(j)
+	if err != nil {
+		return c, err
+	}
+	c.Method = part.Kind.Name
+	comp, err := buildPart(&compensator.Kinds, part.Kind.Name, part.Values)
+	if err == nil {
+		c.Compensator, err = comp.New(b.tick(), comp.values)
+	}
+	return c, b.s.doc.settingError(path, part.Kind, err)
 }
 
 // channel builds all of channel j but its compensator.

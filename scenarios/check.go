@@ -99,14 +99,19 @@ const (
 // common machine, before anything is allocated.
 func (b *builder) checkMemory() error {
 	lanes, channels := float64(1+len(b.s.Lanes)), float64(len(b.s.Channels))
-	record := min(float64(b.ticks), 2*recordTicks) * bytesPerTick
-	window := b.window / b.step() * windowBytes
-	total := lanes * (channels*(record+window) + window)
+	total := lanes * b.laneBytes(float64(b.ticks), b.window)
 	if total > largestMemory {
 		return b.s.doc.errorAt("loop", fmt.Errorf("%g lanes of %g channels with %.3g ticks in the energy window would keep %.3g GB of ticks; at most %.3g GB (a shorter energy_window or fewer lanes need less)",
 			lanes, channels, b.window/b.step(), total/1e9, float64(largestMemory)/1e9))
 	}
 	return nil
+}
+
+// laneBytes is what the gauges of one lane keep.
+func (b *builder) laneBytes(ticks, window float64) float64 {
+	record := min(ticks, 2*recordTicks) * bytesPerTick
+	trail := window / b.step() * windowBytes
+	return float64(len(b.s.Channels))*(record+trail) + trail
 }
 
 // checkStep refuses a step at which the integrator is unstable whatever the
@@ -122,4 +127,15 @@ func (b *builder) checkStep() error {
 			quantity.Short(b.step(), quantity.Time), quantity.Short(limit, quantity.Time), quantity.Short(fastest/(2*math.Pi), quantity.Frequency)))
 	}
 	return nil
+}
+
+// Footprint is about what the gauges of one lane keep during a run, bytes.
+func (s *Scenario) Footprint() int64 {
+	ticks := s.Loop.Num("rate") * s.Loop.Num("duration") * s.Loop.Num("slowdown")
+	window := targetWindow // that of a structure is not known before it is built
+	if s.Loop.Has("energy_window") {
+		window = s.Loop.Num("energy_window")
+	}
+	b := builder{s: s}
+	return int64(b.laneBytes(ticks, window))
 }

@@ -43,7 +43,20 @@ func newRoot() *cobra.Command {
 	}
 	opts.flags(root)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
-	root.AddCommand(newBench(), newRun(), newCheck(), newPace(), newScenarios(), newDescribe(), newVersion())
+	root.AddCommand(
+		newBench(),
+		newRun(),
+		newReplay(),
+		newMargin(),
+		newSweep(),
+		newGather(),
+		newCheck(),
+		newHandoff(),
+		newReport(), newPace(),
+		newScenarios(),
+		newDescribe(),
+		newVersion(),
+	)
 	return root
 }
 

@@ -60,7 +60,7 @@ func (r *Reader) sayMended() {
 	}
 	for i, n := range h.missing {
 		if n > 0 {
-			r.note("%s in %s (first at line %d): bridged by straight lines", numbers(n), r.chosen.columns[i].what, h.firstMissing[i])
+			r.note("%s in %s (first at line %d): bridged by straight lines", absent(n), r.chosen.columns[i].what, h.firstMissing[i])
 		}
 	}
 	if h.cut > 0 {
@@ -95,7 +95,7 @@ func (c *chosen) list() string {
 
 func lines(n int) string  { return plural(int64(n), "line", "lines") }
 func rows(n int64) string { return plural(n, "row", "rows") }
-func numbers(n int64) string {
+func absent(n int64) string {
 	return plural(n, "number is missing", "numbers are missing")
 }
 func have(n int64) string { return plural(n, "row has", "rows have") }

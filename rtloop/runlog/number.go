@@ -14,8 +14,8 @@ import (
 // unit: what is larger is a slip, and its square would overflow sums.
 const largest = 1e15
 
-// scan reads the decimal number at the start of b, with a point or the other
-// mark given for its decimal mark. n is how many bytes it took; 0 if there is no
+// scan reads the decimal number at the start of b, with a point or the given mark
+// for its decimal mark. n is how many bytes it took; 0 if there is no
 // number, or one of a form that it leaves to value. What it returns is the
 // float64 nearest to the decimal number, exactly as strconv.ParseFloat has it.
 func scan(b []byte, mark byte) (v float64, n int) {
@@ -153,9 +153,7 @@ func value(cell []byte, mark byte) (float64, error) {
 	cell = bytes.TrimSpace(cell)
 	if n := len(cell); n >= 2 && cell[0] == '"' && cell[n-1] == '"' {
 		cell = bytes.TrimSpace(cell[1 : n-1])
-		if mark == 0 {
-			mark = ',' // quotes keep it apart from a separator
-		}
+		mark = ',' // quotes keep it apart from a separator
 	}
 	if v, n := scan(cell, mark); n > 0 && n == len(cell) {
 		return v, tooLarge(v, cell)
@@ -169,7 +167,7 @@ func value(cell []byte, mark byte) (float64, error) {
 	for i, c := range text {
 		switch {
 		case c-'0' <= 9 || c == '.' || c == '+' || c == '-' || c == 'e' || c == 'E':
-		case c == mark && mark != 0:
+		case c == mark:
 			text[i] = '.'
 		case c == 'd' || c == 'D':
 			text[i] = 'e' // Fortran

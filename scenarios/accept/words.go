@@ -29,6 +29,9 @@ func (l *Lane) Figure(limit string) (value float64, dim quantity.Dim) {
 	return float64(j.Got), j.Dim
 }
 
+// Printable keeps what a file gave for a name from moving the cursor.
+func Printable(s string) string { return printable(s) }
+
 // Word is a verdict in one word of four letters.
 func Word(pass, colour bool) string {
 	word, code := "FAIL", "31;1"

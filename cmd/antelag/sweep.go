@@ -1,0 +1,222 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"io/fs"
+	"os"
+	"runtime"
+	"time"
+
+	"github.com/spf13/cobra"
+
+	"antelag/scenarios"
+	"antelag/scenarios/report/figure"
+	"antelag/scenarios/study"
+)
+
+// sweepOptions are the flags of sweep.
+type sweepOptions struct {
+	request  study.Request
+	law      string
+	sampling string
+	csv      string
+	png      string
+	shard    string
+	workers  int
+	force    bool
+	json     bool
+}
+
+func newSweep() *cobra.Command {
+	o := &sweepOptions{}
+	cmd := &cobra.Command{
+		Use:   "sweep SCENARIO",
+		Short: "run a scenario many times, on a grid of settings or over its [spread]",
+		Long: `Run a scenario many times with some settings changed: on a grid (--over), over
+draws from its [spread] (--draws), or both, which makes all draws at every point
+of the grid. Exit 0 when every run passes, 1 when one does not.
+
+With --csv every run is a row, in order, SI; the file is the same for any number
+of workers. The same command goes on with a file that was broken off. --shard i/n
+does one part of n and writes FILE.i-of-n.csv; "antelag gather FILE.csv" puts all
+parts together. --shard slurm takes i and n from a Slurm job array:
+
+    sbatch --array=1-20 --wrap "antelag sweep mine.toml --draws 100000 \
+        --csv mine.csv --shard slurm --workers 1"
+
+` + cautions,
+		Args:              oneScenario("sweep"),
+		ValidArgsFunction: completeScenario,
+		RunE:              o.run,
+	}
+	f := cmd.Flags()
+	f.StringArrayVar(&o.request.Sets, "set", nil, setHelp)
+	f.StringArrayVar(&o.request.Over, "over", nil, "go over a setting, `SETTING=a:b:n` or SETTING=a:b:n:log; several make a grid, the last goes fastest")
+	f.Int64Var(&o.request.Draws, "draws", 0, "draw the settings of [spread] so many times")
+	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
+	f.StringVar(&o.sampling, "sampling", "", "how draws lie to each other: latin, a Latin hypercube, or independent (default latin)")
+	f.Int64Var(&o.request.Seed, "seed", 1, "seed of the draws")
+	f.StringVar(&o.request.Lane, "lane", scenarios.Configured, "the lane that is judged")
+	f.StringVar(&o.csv, "csv", "", "write every run to this CSV `file`, with its provenance beside it")
+	f.StringVar(&o.png, "png", "", "draw the summary into this `file`, .png or .svg")
+	f.StringVar(&o.shard, "shard", "", "do one part of the runs, `i/n`, or slurm inside a job array")
+	f.IntVar(&o.workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
+	f.BoolVar(&o.force, "force", false, "begin anew where files of another study are in the way")
+	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
+	return cmd
+}
+
+// oneScenario asks for exactly one SCENARIO.
+func oneScenario(command string) cobra.PositionalArgs {
+	return func(_ *cobra.Command, args []string) error {
+		if len(args) != 1 {
+			return fmt.Errorf("%s takes one SCENARIO: a file, or an embedded one (antelag scenarios lists them)", command)
+		}
+		return nil
+	}
+}
+
+func (o *sweepOptions) run(cmd *cobra.Command, args []string) error {
+	st, shard, err := o.prepare(args[0])
+	if err != nil {
+		return err
+	}
+	sum := study.NewSummary(st)
+	first, last := shard.Part(st.Runs())
+	var table *study.Table
+	if o.csv != "" {
+		if sameFile(shard.Path(o.csv), st.Scenario.Name) {
+			return fmt.Errorf("--csv %s is the scenario itself; choose another name", o.csv)
+		}
+		if table, err = study.OpenTable(o.csv, st, shard, version(), o.force, sum.Add); err != nil {
+			return fileError("--csv", err)
+		}
+		first, last = table.Left()
+	}
+	there, began := sum.Runs, time.Now()
+	err = o.runs(cmd.Context(), st, first, last, table, sum)
+	sum.Compute = study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
+	if e := o.print(cmd.OutOrStdout(), sum); e != nil {
+		return &failure{e}
+	}
+	if e := o.draw(sum); err == nil {
+		err = e
+	}
+	switch {
+	case err != nil && !errors.Is(err, context.Canceled):
+		return &failure{err}
+	case err != nil || !sum.Pass():
+		return errVerdict
+	}
+	return nil
+}
+
+// prepare reads everything that can be wrong before anything is written.
+func (o *sweepOptions) prepare(name string) (*study.Study, study.Shard, error) {
+	shard, err := study.ParseShard(o.shard, os.LookupEnv)
+	if err != nil {
+		return nil, shard, err
+	}
+	if !shard.Whole() && o.csv == "" {
+		return nil, shard, errors.New("--shard writes a part of a table; say which with --csv")
+	}
+	if err := checkPicture(o.png, o.force); err != nil {
+		return nil, shard, err
+	}
+	if o.workers < 0 {
+		return nil, shard, fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.workers)
+	}
+	if o.workers == 0 {
+		o.workers = runtime.GOMAXPROCS(0)
+	}
+	if o.request.Law, err = study.ParseLaw(o.law); err != nil {
+		return nil, shard, err
+	}
+	if o.request.Sampling, err = study.ParseSampling(o.sampling); err != nil {
+		return nil, shard, err
+	}
+	run := runOptions{sets: o.request.Sets}
+	tests, err := run.load([]string{name})
+	if err != nil {
+		return nil, shard, err
+	}
+	st, err := study.New(tests[0], o.request)
+	if err != nil {
+		return nil, shard, err
+	}
+	_, err = tests[0].Build()
+	return st, shard, err
+}
+
+// runs makes the runs and hands each to the table and the summary.
+func (o *sweepOptions) runs(ctx context.Context, st *study.Study, first, last int64, table *study.Table, sum *study.Summary) error {
+	bar := newProgress(st.Scenario.Name)
+	defer bar.clear()
+	defer context.AfterFunc(ctx, bar.clear)()
+	err := st.Run(ctx, first, last, study.Options{Workers: o.workers, Progress: bar.report}, func(rows []study.Row) error {
+		if table != nil {
+			if err := table.Append(rows); err != nil {
+				return err
+			}
+		}
+		for _, r := range rows {
+			sum.Add(r)
+		}
+		return nil
+	})
+	if table != nil {
+		if e := table.Close(); err == nil {
+			err = e
+		}
+	}
+	return err
+}
+
+func (o *sweepOptions) print(out io.Writer, sum *study.Summary) error {
+	if o.json {
+		return writeJSON(out, sum)
+	}
+	return sum.WriteText(out, inColour())
+}
+
+// draw draws the picture, if there is to be one.
+func (o *sweepOptions) draw(sum *study.Summary) error {
+	if o.png == "" || sum.Runs == 0 {
+		return nil
+	}
+	return pngError(figure.Save(o.png, sum.Picture(), o.force))
+}
+
+// checkPicture refuses the name of a picture before anything has run.
+func checkPicture(path string, force bool) error {
+	if path == "" {
+		return nil
+	}
+	if _, err := figure.Format(path); err != nil {
+		return pngError(err)
+	}
+	if _, err := os.Lstat(path); err == nil && !force {
+		return fmt.Errorf("--png: %s: %w; --force overwrites it", path, fs.ErrExist)
+	}
+	return nil
+}
+
+func pngError(err error) error {
+	if err != nil {
+		err = fmt.Errorf("--png: %w", err)
+	}
+	return err
+}
+
+// fileError sorts errors about output files: what stands in the way is for the
+// user to put right; what cannot be written is a failure.
+func fileError(flag string, err error) error {
+	err = fmt.Errorf("%s: %w", flag, err)
+	if errors.Is(err, study.ErrMismatch) {
+		return err
+	}
+	return &failure{err}
+}
