@@ -47,7 +47,7 @@ func newRoot() *cobra.Command {
 		newBench(),
 		newRun(),
 		newSweep(),
-		newGather(),
+		newGather(), newTune(),
 		newCheck(),
 		newHandoff(),
 		newPace(),
