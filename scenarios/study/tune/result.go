@@ -40,14 +40,14 @@ func (s *searcher) result() (*Result, error) {
 	if s.err != nil {
 		return r, s.err
 	}
-	all := s.ranked(s.all())
+	all := s.rank(s.known, s.all())
 	if len(all) == 0 {
 		return r, ErrNothingRan
 	}
 	r.Best, r.All = all[0], all
-	r.Front = s.front(s.all())
+	r.Front = s.front(all)
 	if !s.Pass(r.Best) {
-		r.Stands = s.obstacles(r.Best)
+		r.Stands = s.obstacles(all)
 	}
 	return r, nil
 }
@@ -55,16 +55,18 @@ func (s *searcher) result() (*Result, error) {
 // Pass reports whether there is a candidate that meets all limits.
 func (r *Result) Pass() bool { return r.Best != nil && r.Problem.Pass(r.Best) }
 
-// obstacles are the limits that a candidate misses, the worst missed first.
-func (s *searcher) obstacles(best *Candidate) []Obstacle {
+// obstacles are the limits that the best of all candidates misses, the worst
+// missed first.
+func (s *searcher) obstacles(all []*Candidate) []Obstacle {
 	var out []Obstacle
+	best := all[0]
 	for i := range s.Measures {
 		m := &s.Measures[i]
 		if m.Pass(best.Measured[i]) {
 			continue
 		}
 		o := Obstacle{Measure: i, Got: best.Measured[i], Nearest: math.NaN()}
-		for _, c := range s.ranked(s.all()) {
+		for _, c := range all {
 			if v := c.Measured[i]; !(m.Missed(v) >= m.Missed(o.Nearest)) {
 				o.Nearest = v
 			}
@@ -97,7 +99,7 @@ func (p *Problem) margin() int {
 
 // front are the candidates of which none is better in both the figure and the
 // margin, the most accurate first.
-func (s *searcher) front(by int) []*Candidate {
+func (s *searcher) front(of []*Candidate) []*Candidate {
 	i := s.margin()
 	bad := func(c *Candidate) (figure, margin float64) {
 		figure, margin = s.Column.Bad(c.Figure), c.Measured[i]
@@ -107,7 +109,7 @@ func (s *searcher) front(by int) []*Candidate {
 		return figure, margin
 	}
 	var out []*Candidate
-	all := slices.DeleteFunc(s.ranked(by), func(c *Candidate) bool {
+	all := slices.DeleteFunc(slices.Clone(of), func(c *Candidate) bool {
 		f, m := bad(c)
 		return math.IsInf(f, 0) || math.IsNaN(m)
 	})

@@ -37,9 +37,10 @@ type searcher struct {
 	record *Record
 
 	lock  sync.Mutex
-	known map[string]*Candidate
-	runs  int64 // made
-	of    int64 // about how many there will be
+	known map[string]*Candidate // all there are, those of the record included
+	tried map[string]*Candidate // those of this search, by which it goes on: so it goes the same way with a record and without
+	runs  int64                 // made
+	of    int64                 // about how many there will be
 	err   error
 }
 
@@ -56,7 +57,7 @@ func (p *Problem) Search(ctx context.Context, record *Record) (*Result, error) {
 	if workers <= 0 {
 		workers = runtime.GOMAXPROCS(0)
 	}
-	s := &searcher{Problem: p, ctx: ctx, places: make(chan struct{}, workers), record: record, known: map[string]*Candidate{}}
+	s := &searcher{Problem: p, ctx: ctx, places: make(chan struct{}, workers), record: record, known: map[string]*Candidate{}, tried: map[string]*Candidate{}}
 	if record != nil {
 		for _, c := range record.had {
 			s.known[s.name(c.Values, c.Judged)] = c
@@ -69,29 +70,35 @@ func (p *Problem) Search(ctx context.Context, record *Record) (*Result, error) {
 }
 
 // plan says how many candidates each part of the search may try.
-type plan struct{ look, generations, close int }
+type plan struct{ look, generations, finalists, close, frontier int }
 
 // runs is about how many runs a plan takes.
 func (pl plan) runs(p *Problem) int64 {
 	wide, all := int64(p.wide()+1), int64(p.all()+1)
-	return int64(pl.look+1+pl.generations*population)*wide + int64(finalists+1+pl.close+frontier)*all
+	return int64(pl.look+1+pl.generations*population)*wide + int64(1+pl.finalists+pl.close+pl.frontier)*all
 }
 
-// plan fits the search into the runs that are allowed: the wide search gives way
-// first.
-func (s *searcher) plan() plan {
-	d := len(s.Ranges)
-	pl := plan{firstLook + firstLookEach*d, generations + d, closeLook + closeLookEach*(d-1)}
-	for s.Runs > 0 && pl.runs(s.Problem) > s.Runs {
-		switch {
-		case pl.generations > 0:
+// leastPlan is the least that is a search.
+var leastPlan = plan{look: 1, finalists: 1}
+
+// plan fits the search into the runs that are allowed.
+func (p *Problem) plan() plan {
+	d := len(p.Ranges)
+	pl := plan{firstLook + firstLookEach*d, generations + d, finalists, closeLook + closeLookEach*(d-1), frontier}
+	for p.Runs > 0 && pl.runs(p) > p.Runs && pl != leastPlan {
+		switch { // what is missed least goes first
+		case pl.frontier > 0:
+			pl.frontier--
+		case pl.generations > 1:
 			pl.generations--
 		case pl.close > 4:
 			pl.close--
-		case pl.look > 2:
+		case pl.look > 3:
 			pl.look--
+		case pl.finalists > 1:
+			pl.finalists--
 		default:
-			return pl
+			pl.generations, pl.close, pl.look = 0, max(pl.close-1, 0), max(pl.look-1, 1)
 		}
 	}
 	return pl
@@ -122,9 +129,9 @@ func (s *searcher) search(pl plan) {
 	s.tryAll(look, s.wide())
 	s.evolve(pl.generations)
 	best := s.ranked(s.wide())
-	s.tryAll(values(best[:min(len(best), finalists)]), s.all())
+	s.tryAll(values(best[:min(len(best), pl.finalists)]), s.all())
 	s.closeIn(pl.close)
-	s.tryAll(values(thinned(s.front(s.wide()), frontier)), s.all())
+	s.tryAll(values(thinned(s.front(s.ranked(s.wide())), pl.frontier)), s.all())
 }
 
 func values(candidates []*Candidate) [][]float64 {
@@ -281,6 +288,9 @@ func (s *searcher) try(values []float64, by, parts int) *Candidate {
 	name := s.name(values, by)
 	s.lock.Lock()
 	c := s.known[name]
+	if c != nil {
+		s.tried[name] = c
+	}
 	s.lock.Unlock()
 	if c == nil && !s.over() {
 		var err error
@@ -308,7 +318,7 @@ func (s *searcher) keep(name string, c *Candidate) {
 	if s.known[name] != nil { // two were at it
 		return
 	}
-	s.known[name] = c
+	s.known[name], s.tried[name] = c, c
 	s.runs += int64(c.Judged + 1)
 	if s.Progress != nil {
 		s.Progress(min(s.runs, s.of), s.of)
@@ -323,13 +333,17 @@ func (p *Problem) name(values []float64, by int) string {
 	return string(appendValues(nil, append(slices.Clone(values), float64(by))))
 }
 
-// ranked are the candidates judged by so many variations, best first; of equals the
-// one with the smaller settings.
+// ranked are the candidates of this search judged by so many variations, best
+// first; of equals the one with the smaller settings.
 func (s *searcher) ranked(by int) []*Candidate {
 	s.lock.Lock()
 	defer s.lock.Unlock()
+	return s.rank(s.tried, by)
+}
+
+func (s *searcher) rank(from map[string]*Candidate, by int) []*Candidate {
 	var out []*Candidate
-	for _, c := range s.known {
+	for _, c := range from {
 		if c.Judged == by && s.inRange(c) {
 			out = append(out, c)
 		}

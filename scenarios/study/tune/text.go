@@ -214,6 +214,9 @@ func thinned(all []*Candidate, n int) []*Candidate {
 	if len(all) <= n {
 		return all
 	}
+	if n < 2 {
+		return all[:n]
+	}
 	out := make([]*Candidate, n)
 	for i := range out {
 		out[i] = all[i*(len(all)-1)/(n-1)]

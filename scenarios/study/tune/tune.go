@@ -91,6 +91,9 @@ func New(s *scenarios.Scenario, o Options) (*Problem, error) {
 		}
 	}
 	p.Measures = p.measures()
+	if least := leastPlan.runs(p); o.Runs != 0 && o.Runs < least {
+		return nil, fmt.Errorf("%d runs are too few; with %d variations of each setting it takes at least %d", o.Runs, p.all()+1, least)
+	}
 	return p, s.CheckLane(o.Lane)
 }
 
