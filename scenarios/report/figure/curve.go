@@ -2,6 +2,7 @@ package figure
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/plot"
 	"gonum.org/v1/plot/vg"
@@ -18,6 +19,11 @@ type curve struct {
 // shown reports whether the values can be placed.
 func (c *curve) shown(x, y float64) bool {
 	return finite(x) && finite(y) && !(c.logX && x <= 0) && !(c.logY && y <= 0)
+}
+
+// history reports whether the curve runs along an X that never goes back.
+func (c *curve) history() bool {
+	return (!c.line.Points || c.line.Joined) && slices.IsSorted(c.line.X)
 }
 
 // Plot draws band, line and markers.
