@@ -104,14 +104,6 @@ func (r *recorder) finish() {
 // span is a stretch of rows, from the first to before the last.
 type span struct{ from, to int }
 
-// middle is the middle of a stretch, a share of it.
-func (s span) middle(share float64) span {
-	n := s.to - s.from
-	rows := min(n, max(2, int(share*float64(n))))
-	from := s.from + (n-rows)/2
-	return span{from, from + rows}
-}
-
 // strongest is the stretch of about so many model seconds in whose middle the
 // target of channel j is largest.
 func (r *recorder) strongest(j int, seconds float64) span {

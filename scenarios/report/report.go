@@ -107,15 +107,18 @@ func (r *run) report(ctx context.Context) (*Test, error) {
 		Name: r.s.Name, Title: r.s.Title, Question: r.question(), Word: r.lane.Word(), Pass: r.v.Pass(),
 		Verdict: r.verdict(), Verdicts: r.v, overview: r.overview(),
 	}
-	response, err := r.response(ctx)
+	provenance, err := r.provenance()
 	if err != nil {
 		return nil, err
 	}
-	parts := []Part{r.acceptance(), r.compared(), r.motions(), r.energyPart(), response}
+	parts := []Part{r.acceptance(), r.compared(), r.motions(), r.energyPart()}
+	// The parts that have run are taken to the bench: nothing after this may ask
+	// the loop for what it did, but for its coefficients.
+	parts = append(parts, r.response(ctx))
 	parts = append(parts, r.stability(ctx)...)
 	parts = append(parts, r.spreadPart(), r.reached(), r.structure())
 	parts = append(parts, r.channels()...)
-	parts = append(parts, r.assumptions(), r.provenance())
+	parts = append(parts, r.assumptions(), provenance)
 	for _, p := range parts {
 		if !p.empty() {
 			t.Parts = append(t.Parts, p)
