@@ -46,6 +46,8 @@ func newRoot() *cobra.Command {
 	root.AddCommand(
 		newBench(),
 		newRun(),
+		newReplay(),
+		newMargin(),
 		newSweep(),
 		newGather(),
 		newCheck(),

@@ -184,11 +184,9 @@ func (c *chosen) addRole(l *layout, o *Options, channel string, r Role, at int) 
 // names. Time is in seconds where nobody says otherwise; for lengths and forces
 // there is no such custom, and a wrong guess would be off by a thousand.
 func (c *chosen) add(l *layout, o *Options, col column, dim quantity.Dim) error {
-	channel, role, _ := strings.Cut(col.what, ".")
+	channel, role := "", col.what
 	if i := strings.LastIndexByte(col.what, '.'); i >= 0 {
 		channel, role = col.what[:i], col.what[i+1:]
-	} else {
-		channel, role = "", col.what
 	}
 	heading, has := l.unitOf(col.at, dim)
 	given, asked := o.Units.of(channel, role, dim)

@@ -21,7 +21,7 @@ func newEvaluator(m *Model) *evaluator {
 		largest = max(largest, m.channels[i].plant.core.n)
 	}
 	return &evaluator{
-		m: m, work: make([]complex128, largest*largest), side: make([]complex128, largest),
+		m: m, work: make([]complex128, largest*(largest+1)), side: make([]complex128, largest),
 		sides: make([]complex128, c*m.structure.n), loop: make([]complex128, c*c), lu: make([]complex128, c*c),
 	}
 }

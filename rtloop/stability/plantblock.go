@@ -1,6 +1,8 @@
 package stability
 
 import (
+	"math"
+
 	"antelag/plant"
 )
 
@@ -22,52 +24,134 @@ type delayed struct {
 	d     float64
 }
 
-// newPlantBlock disturbs what the parts carry, value by value, by their own code.
-// They are left at rest.
+// newPlantBlock disturbs what the parts carry by their own code. They are left at
+// rest.
 func newPlantBlock(a plant.Actuator, specimen *plant.Specimen, force *plant.Sensor) (*plantBlock, error) {
-	memory := func(each func(*float64)) {
-		a.Memory(each)
-		specimen.Memory(each)
-		force.Memory(each)
-	}
-	n := 0
-	memory(func(*float64) { n++ })
-	// tick returns what one tick makes of a disturbance of state j, or, with j = n,
-	// of the command; row n is the force.
-	tick := func(j int) []entry {
-		i := 0
-		memory(func(v *float64) {
-			*v = 0
-			if i == j {
-				*v = small
-			}
-			i++
-		})
-		u := 0.0
-		if j == n {
-			u = small
+	p := &probe{actuator: a, specimen: specimen, force: force}
+	p.memory(func(*float64) { p.n++ })
+	p.before, p.after = make([]float64, p.n), make([]float64, p.n)
+	p.findFollowers()
+	columns := make([][]entry, p.n+1)
+	p.columns(0, p.n, columns)
+	clear(p.before)
+	p.tick(small)
+	columns[p.n] = p.column()
+	p.memory(func(v *float64) { *v = 0 })
+	return reduce(p.n, columns)
+}
+
+// probe lets one channel do single ticks.
+type probe struct {
+	actuator plant.Actuator
+	specimen *plant.Specimen
+	force    *plant.Sensor
+
+	n             int
+	before, after []float64
+	r             float64
+	follower      []int // who becomes what this value was, as in a dead time; −1: nobody
+}
+
+func (p *probe) memory(each func(*float64)) {
+	p.actuator.Memory(each)
+	p.specimen.Memory(each)
+	p.force.Memory(each)
+}
+
+// tick does one from the state before, under a command.
+func (p *probe) tick(u float64) {
+	i := 0
+	p.memory(func(v *float64) { *v = p.before[i]; i++ })
+	p.actuator.Advance(u, p.specimen)
+	p.r = p.force.Read(p.specimen.Force())
+	i = 0
+	p.memory(func(v *float64) { p.after[i] = *v; i++ })
+}
+
+// column is what the last tick made of a disturbance of size small; row n is the
+// force.
+func (p *probe) column() []entry {
+	var column []entry
+	for i, v := range p.after {
+		if v != 0 {
+			column = append(column, entry{i, v / small})
 		}
-		a.Advance(u, specimen)
-		r := force.Read(specimen.Force())
-		var column []entry
-		i = 0
-		memory(func(v *float64) {
-			if *v != 0 {
-				column = append(column, entry{i, *v / small})
-			}
-			i++
-		})
-		if r != 0 {
-			column = append(column, entry{n, r / small})
+	}
+	if p.r != 0 {
+		column = append(column, entry{p.n, p.r / small})
+	}
+	return column
+}
+
+// scatter is a disturbance unlike any other's.
+func scatter(i int) float64 { return small * (1 + math.Abs(math.Sin(1+float64(i)*math.Sqrt2))) }
+
+// findFollowers disturbs everything at once, each value differently: what then has
+// a value that another had before has taken its place.
+func (p *probe) findFollowers() {
+	was := make(map[float64]int, p.n)
+	for i := range p.before {
+		p.before[i] = scatter(i)
+		was[p.before[i]] = i
+	}
+	p.tick(0)
+	p.follower = make([]int, p.n)
+	for i := range p.follower {
+		p.follower[i] = -1
+	}
+	for i, v := range p.after {
+		if j, ok := was[v]; ok && j != i {
+			p.follower[j] = i
 		}
-		return column
 	}
-	columns := make([][]entry, n+1)
-	for j := range columns {
-		columns[j] = tick(j)
+}
+
+// columns finds the columns of the values from low to high. Where all of them
+// together do nothing but hand their values on, which is most of a long dead time,
+// none of them does.
+func (p *probe) columns(low, high int, columns [][]entry) {
+	if low >= high {
+		return
 	}
-	memory(func(v *float64) { *v = 0 })
-	return reduce(n, columns)
+	clear(p.before)
+	if high-low == 1 {
+		p.before[low] = small
+		p.tick(0)
+		columns[low] = p.column()
+		return
+	}
+	for i := low; i < high; i++ {
+		p.before[i] = scatter(i)
+	}
+	p.tick(0)
+	if p.onlyHandedOn(low, high) {
+		for i := low; i < high; i++ {
+			columns[i] = []entry{{p.follower[i], 1}}
+		}
+		return
+	}
+	mid := low + (high-low)/2
+	p.columns(low, mid, columns)
+	p.columns(mid, high, columns)
+}
+
+func (p *probe) onlyHandedOn(low, high int) bool {
+	if p.r != 0 {
+		return false
+	}
+	for i := low; i < high; i++ {
+		f := p.follower[i]
+		if f < 0 || p.after[f] != p.before[i] {
+			return false
+		}
+		p.after[f] = 0
+	}
+	for _, v := range p.after {
+		if v != 0 {
+			return false
+		}
+	}
+	return true
 }
 
 // line says that a state is nothing but the command so many ticks ago, times gain.

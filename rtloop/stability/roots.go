@@ -15,11 +15,15 @@ var ErrUnsettled = errors.New("the poles of the loop cannot be told apart by its
 // Poles returns poles of the loop, one of each pair, by falling size: the largest,
 // and those others that were found on the way. That none is larger is made sure of
 // by counting zeros of F outside a circle through it (argument principle). near are
-// guesses where to look first.
+// guesses where to look, like the poles of a loop that is nearly the same; without
+// any it begins at those of the structure with perfect actuators.
 func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 	e := newEvaluator(m)
 	var found []complex128
-	for _, z := range append(slices.Clone(near), m.starts...) {
+	if len(near) == 0 {
+		near = m.starts
+	}
+	for _, z := range near {
 		if r, ok := e.descend(z, found); ok {
 			found = append(found, r)
 		}
@@ -38,7 +42,7 @@ func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 			slices.SortFunc(found, func(a, b complex128) int { return cmp.Compare(cmplx.Abs(b), cmplx.Abs(a)) })
 			return found, nil
 		}
-		r, ok := e.beyond(&c, found)
+		r, ok := e.outermost(&c, beyond, found)
 		if !ok {
 			return nil, ErrUnsettled
 		}
@@ -52,20 +56,41 @@ func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 // radius. Dead times have faster poles without number; those that matter are larger
 // than the structure's.
 func (m *Model) Modes(poles []complex128) []Mode {
+	e := newEvaluator(m)
+	var modes []Mode
+	for _, z := range m.slow(poles) {
+		mode := newMode(z, m.dt)
+		mode.Shape = e.shape(z, m.levels)
+		modes = append(modes, mode)
+	}
+	slices.SortStableFunc(modes, func(a, b Mode) int { return cmp.Compare(a.Damping, b.Damping) })
+	return modes
+}
+
+// LeastDamping is the damping ratio of the first of Modes; NaN where there is none.
+func (m *Model) LeastDamping(poles []complex128) float64 {
+	least := math.NaN()
+	for _, z := range m.slow(poles) {
+		if d := newMode(z, m.dt).Damping; !(d >= least) {
+			least = d
+		}
+	}
+	return least
+}
+
+// slow are the largest pole and those no faster than twice the structure's fastest.
+func (m *Model) slow(poles []complex128) []complex128 {
 	fastest := 0.0
 	for _, z := range m.starts {
 		fastest = max(fastest, newMode(z, m.dt).Frequency)
 	}
-	e := newEvaluator(m)
-	var modes []Mode
+	var out []complex128
 	for i, z := range poles {
-		if mode := newMode(z, m.dt); i == 0 || mode.Frequency <= 2*fastest {
-			mode.Shape = e.shape(z, m.levels)
-			modes = append(modes, mode)
+		if i == 0 || newMode(z, m.dt).Frequency <= 2*fastest {
+			out = append(out, z)
 		}
 	}
-	slices.SortStableFunc(modes, func(a, b Mode) int { return cmp.Compare(a.Damping, b.Damping) })
-	return modes
+	return out
 }
 
 // Radius returns the spectral radius; near as in Poles.
@@ -81,20 +106,21 @@ func (m *Model) Radius(near ...complex128) (float64, error) {
 func (m *Model) Pole(guess complex128) (complex128, bool) { return newEvaluator(m).descend(guess, nil) }
 
 // Unstable returns how many poles are outside the circle of that radius, each of a
-// pair counted.
+// pair counted. It need not find them.
 func (m *Model) Unstable(radius float64) (int, error) {
-	poles, err := m.Poles()
-	if err != nil {
-		return 0, err
-	}
-	// All of those that are larger than the radius are wanted, not the largest.
 	e := newEvaluator(m)
-	c := circle{e: e, radius: radius, known: poles}
+	var found []complex128
+	for _, z := range m.starts {
+		if r, ok := e.descend(z, found); ok {
+			found = append(found, r)
+		}
+	}
+	c := circle{e: e, radius: radius, known: found}
 	n, ok := c.zeros(e.nodes())
 	if !ok {
 		return 0, ErrUnsettled
 	}
-	for _, r := range poles {
+	for _, r := range found {
 		if cmplx.Abs(r) > radius {
 			n += weight(r)
 		}
@@ -160,14 +186,35 @@ func settle(z complex128) complex128 {
 	return complex(real(z), math.Abs(imag(z)))
 }
 
-// beyond looks for a zero outside the circle that is not known, from the places on
-// it where F is least.
-func (e *evaluator) beyond(c *circle, known []complex128) (complex128, bool) {
+// outermost looks for a zero outside the circle that is not known. Where there are
+// many it looks from the largest circle outside which there still is one.
+func (e *evaluator) outermost(c *circle, beyond int, known []complex128) (complex128, bool) {
+	far := *c
+	for share := 0.01; beyond > 2 && share < 1e3; share *= 2 {
+		next := circle{e: e, radius: c.radius * (1 + share), known: known}
+		n, ok := next.zeros(e.nodes())
+		if !ok || n == 0 {
+			if r, ok := e.beyond(&next, c.radius, known); ok {
+				return r, true
+			}
+			break
+		}
+		far, beyond = next, n
+	}
+	if r, ok := e.beyond(&far, c.radius, known); ok {
+		return r, true
+	}
+	return e.beyond(c, c.radius, known)
+}
+
+// beyond looks for a zero outside a radius that is not known, from the places on a
+// circle where F is least.
+func (e *evaluator) beyond(c *circle, radius float64, known []complex128) (complex128, bool) {
 	slices.SortFunc(c.dips, func(a, b dip) int { return cmp.Compare(a.log, b.log) })
 	for _, d := range c.dips[:min(12, len(c.dips))] {
 		for _, out := range []float64{1, 1.001, 1.03} {
 			r, ok := e.descend(cmplx.Rect(c.radius*out, d.angle), known)
-			if ok && cmplx.Abs(r) > c.radius*(1-1e-12) {
+			if ok && cmplx.Abs(r) > radius*(1-1e-12) {
 				return r, true
 			}
 		}

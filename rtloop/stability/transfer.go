@@ -75,11 +75,11 @@ func (t *transfer) outward(c []float64) []float64 {
 }
 
 // solve overwrites right sides, transformed columns of n each, by (zI − H)⁻¹ of
-// them and returns det(zI − H). work has n² elements.
+// them and returns det(zI − H). work has n·(n+1) elements.
 func (t *transfer) solve(z complex128, sides []complex128, work []complex128) scaled {
 	n := t.n
 	det := one
-	w := work[:n*n]
+	w, inverses := work[:n*n], work[n*n:n*n+n]
 	for i, v := range t.h {
 		w[i] = complex(-v, 0)
 	}
@@ -99,17 +99,17 @@ func (t *transfer) solve(z complex128, sides []complex128, work []complex128) sc
 				}
 				det.m = -det.m
 			}
-			if row[k] != 0 {
-				f := below[k] / row[k]
-				if f != 0 {
-					for j := k + 1; j < n; j++ {
-						below[j] -= f * row[j]
-					}
-					for s := k; s+1 < len(sides); s += n {
-						sides[s+1] -= f * sides[s]
-					}
+			inverses[k] = inverse(row[k])
+			if f := below[k] * inverses[k]; f != 0 {
+				for j := k + 1; j < n; j++ {
+					below[j] -= f * row[j]
+				}
+				for s := k; s+1 < len(sides); s += n {
+					sides[s+1] -= f * sides[s]
 				}
 			}
+		} else {
+			inverses[k] = inverse(row[k])
 		}
 		det = det.times(row[k])
 	}
@@ -121,10 +121,17 @@ func (t *transfer) solve(z complex128, sides []complex128, work []complex128) sc
 			for j := i + 1; j < n; j++ {
 				sum -= row[j] * x[j]
 			}
-			x[i] = sum / row[i]
+			x[i] = sum * inverses[i]
 		}
 	}
 	return det
+}
+
+// inverse is 1/z for a z of ordinary size, quicker than a division that minds all
+// others.
+func inverse(z complex128) complex128 {
+	d := real(z)*real(z) + imag(z)*imag(z)
+	return complex(real(z)/d, -imag(z)/d)
 }
 
 func size1(z complex128) float64 { return math.Abs(real(z)) + math.Abs(imag(z)) }

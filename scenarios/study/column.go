@@ -44,6 +44,9 @@ func suffix(d quantity.Dim) string {
 // settingName is the column of a setting that varies.
 func settingName(path string, s *kind.Setting) string { return path + suffix(s.Dim) }
 
+// Column is the name that the setting has as a column, with its unit.
+func (r *Range) Column() string { return settingName(r.Path, &r.Setting) }
+
 // channelFigures are found for each channel.
 var channelFigures = []struct {
 	name, label string
@@ -106,6 +109,12 @@ func columns(s *scenarios.Scenario) []Column {
 	}
 	return out
 }
+
+// Of returns the figure of a lane, NaN where it is undefined.
+func (c *Column) Of(l *accept.Lane) float64 { return c.get(l) }
+
+// ColumnsOf are the figures that runs of a scenario have.
+func ColumnsOf(s *scenarios.Scenario) []Column { return columns(s) }
 
 // Columns returns the figures that every run of the study has.
 func (st *Study) Columns() []Column { return st.columns }

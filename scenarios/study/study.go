@@ -37,7 +37,6 @@ type Study struct {
 	Spread []Spread // what is drawn, in the order of the paths; nil without draws
 
 	columns []Column
-	shared  []int // which varied settings motion or reference depend on
 	points  int64 // of the grid
 }
 
@@ -71,11 +70,6 @@ func New(s *scenarios.Scenario, r Request) (*Study, error) {
 	}
 	if err := st.draws(); err != nil {
 		return nil, err
-	}
-	for i, p := range st.Paths() {
-		if sharedSection(p) {
-			st.shared = append(st.shared, i)
-		}
 	}
 	st.columns = columns(s)
 	return st, nil

@@ -75,7 +75,7 @@ func TestRowsAreThoseOfSingleRuns(t *testing.T) {
 			if lane != scenarios.Configured {
 				l = &v.Lanes[1]
 			}
-			alone := st.row(int64(i), l)
+			alone := st.row(int64(i), &Judged{Lane: *l})
 			if table(st, []Row{alone}) != table(st, []Row{r}) {
 				t.Fatalf("lane %s, run %d\nin the study %v\nalone        %v", lane, i, r, alone)
 			}

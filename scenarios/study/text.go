@@ -210,16 +210,16 @@ func (s *Summary) points(b *strings.Builder) {
 	}
 	rows := [][]string{head}
 	for _, p := range s.Points {
-		if p.sketch != nil {
+		if p.Worst == nil {
 			break // not all its draws are there
 		}
 		var row []string
 		for i, v := range p.Values {
 			row = append(row, st.Grid[i].Setting.Format(v))
 		}
-		row = append(row, fmt.Sprintf("%d of %d", p.Passed, p.Runs), main.Column.Format(p.Worst))
+		row = append(row, fmt.Sprintf("%d of %d", p.Passed, p.Runs), main.Column.Format(p.Worst[s.main()]))
 		if st.Draws > 0 {
-			row = append(row, main.Column.size(p.Most))
+			row = append(row, main.Column.size(p.Most[s.main()]))
 		}
 		rows = append(rows, row)
 	}
