@@ -25,6 +25,7 @@ compilers=()
 for c in gcc clang; do
 	if command -v "$c" >/dev/null; then compilers+=("$c"); else echo "no $c here: not tried"; fi
 done
+for c in make nm; do command -v "$c" >/dev/null || fail "there is no $c here"; done
 [ ${#compilers[@]} -gt 0 ] || fail "neither gcc nor clang is there"
 echo "seed $seed, compilers ${compilers[*]}"
 strict=(-std=c99 -Wall -Wextra -Wpedantic -Wconversion -Wdouble-promotion -Wshadow -Wstrict-prototypes -Wmissing-prototypes -Werror -ffp-contract=off)
