@@ -268,17 +268,18 @@ type circle struct {
 // dip is a place where the size of F is less than around it.
 type dip struct{ angle, log float64 }
 
-// sample is F at one angle.
+// sample is F at one angle, and how much comes back there of a force.
 type sample struct {
 	angle float64
 	f     scaled
 	log   float64
+	loud  bool
 }
 
 func (c *circle) sample(angle float64) sample {
 	c.left--
 	f := c.e.deflated(cmplx.Rect(c.radius, angle), c.known)
-	return sample{angle, f, f.log()}
+	return sample{angle, f, f.log(), c.e.returned() > quiet}
 }
 
 // zeros goes along the upper half of the circle; the lower is its mirror image.
@@ -301,10 +302,15 @@ func (c *circle) zeros(nodes []float64) (n int, ok bool) {
 		}
 		older, last = last, next
 	}
+	c.dips = append(c.dips, dip{last.angle, last.log}) // a real one lies at the end
 	turns := -turned / math.Pi
 	whole := math.Round(turns)
 	return int(whole), math.Abs(turns-whole) < 0.1
 }
+
+// quiet is how little may come back for det(I − L) to stay near 1 wherever its phases
+// are.
+const quiet = 0.2
 
 // How far F may turn, rad, and how much its logarithm may bend in half a piece, for
 // it to be followed without doubt.
@@ -317,7 +323,8 @@ func (c *circle) turn(a, b sample, depth int) (float64, bool) {
 	}
 	m := c.sample(0.5 * (a.angle + b.angle))
 	first, second := turned(a, m), turned(m, b)
-	if math.Abs(first) < mostTurn && math.Abs(second) < mostTurn && math.Abs(m.log-0.5*(a.log+b.log)) < mostBend {
+	coarse := (a.loud || m.loud || b.loud) && (b.angle-a.angle)*c.e.m.longest > mostTurn*2
+	if !coarse && math.Abs(first) < mostTurn && math.Abs(second) < mostTurn && math.Abs(m.log-0.5*(a.log+b.log)) < mostBend {
 		return first + second, true
 	}
 	if m.log < a.log && m.log < b.log {
