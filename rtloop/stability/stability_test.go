@@ -176,8 +176,14 @@ func TestIntegrators(t *testing.T) {
 			continue
 		}
 		got := cmplx.Abs(poles[0])
-		// Where ω·dt is large the poles are nearly one, and half the digits are lost.
-		if math.IsNaN(c.radius) != (got > 1.01) || math.Abs(got-c.radius) > 1e-4 && got <= 1.01 || c.step < 10 && math.Abs(got-c.radius) > 1e-9 || math.Abs(got-want.Radius) > 1e-5 {
+		// Far out the limit is reached with a power of 1/(ω·dt) below 1, and as the
+		// poles become one they keep a third of the digits.
+		tolerance, digits := 1e-9, 1e-9
+		if c.step > 10 {
+			tolerance, digits = 1e-3, 1e-5
+		}
+		grows := math.IsNaN(c.radius)
+		if grows != (got > 1.01) || !grows && math.Abs(got-c.radius) > tolerance || math.Abs(got-want.Radius) > digits {
 			t.Errorf("%s at ω·dt = %g: radius %.10f, by eigenvalues %.10f, want %v", c.integrator, c.step, got, want.Radius, c.radius)
 		}
 		if a := cmplx.Phase(poles[0]); math.Abs(a-c.angle) > 1e-6 {
@@ -198,7 +204,7 @@ func TestMode(t *testing.T) {
 		t.Fatal(err)
 	}
 	mode := m.Modes(poles)[0]
-	if math.Abs(mode.Frequency*2*math.Pi/omega-1) > 1e-6 || math.Abs(mode.Damping/zeta-1) > 1e-5 || len(mode.Shape) != 1 || mode.Shape[0] != 1 {
+	if math.Abs(mode.Frequency*2*math.Pi/omega-1) > 1e-6 || math.Abs(mode.Damping/zeta-1) > 1e-5 || len(mode.Shape) != 1 || cmplx.Abs(mode.Shape[0]-1) > 1e-12 {
 		t.Errorf("%+v", mode)
 	}
 	if got := m.LeastDamping(poles); got != mode.Damping {
