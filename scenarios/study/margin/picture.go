@@ -23,7 +23,7 @@ func (g *Grid) Figure() figure.Figure {
 		},
 	}
 	if g.Measure == Radius {
-		p.Map.Label, p.Map.Unit, p.Map.Contours = "spectral radius less 1", "10⁻⁶", g.radiusContours()
+		p.Map.Label, p.Map.Unit, p.Map.Contours = "spectral radius less 1, in millionths", "", g.radiusContours()
 	}
 	for iy := range g.Y.N {
 		row := make([]float64, g.X.N)
