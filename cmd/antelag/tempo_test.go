@@ -14,7 +14,7 @@ func TestTempo(t *testing.T) {
 	t.Parallel()
 	dir := folder(t, "rig.toml", edited(t, `"8 s"`, `"4 s"`))
 	o := antelag(t, dir, "tempo", "rig.toml", "--slowdown", "1:6:3", "--png", "t.png").good(t)
-	for _, want := range []string{"\nPASS     1 ", "\nPASS  2.45 ", "\nPASS     6 ", "The fastest slowdown that passes is 1.", "response error  ", "slowdown"} {
+	for _, want := range []string{"\nPASS      1 ", "\nPASS   2.45 ", "\nPASS      6 ", "The fastest slowdown that passes is 1.", "response error  ", "slowdown"} {
 		if !strings.Contains(o.out, want) {
 			t.Errorf("no %q in\n%s", want, o.out)
 		}

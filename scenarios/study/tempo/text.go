@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"strconv"
 	"strings"
 	"unicode/utf8"
 
@@ -31,22 +32,24 @@ func (r *Report) WriteText(w io.Writer, columns int, colour bool) error {
 	return err
 }
 
-// heads are the headings of the table in two rows.
-func (r *Report) heads() [2][]string {
-	heads := [2][]string{
+// heads are the headings of the table in rows, the last with the units.
+func (r *Report) heads() [][]string {
+	heads := [][]string{
 		{"slow-", "test", "tracking", ""},
 		{"down", "lasts", "error", "delay"},
+		{"", "s", "%", "ms"},
 	}
 	if r.Structure {
 		heads[0] = append(heads[0], "energy", "delay", "response", "synchro-", "rate", "corre-")
 		heads[1] = append(heads[1], "margin", "margin", "error", "nization", "effects", "lation")
+		heads[2] = append(heads[2], "%", "ms", "%", "%", "%", "")
 	}
 	return heads
 }
 
 func (r *Report) table(b *strings.Builder, colour bool) {
-	heads := r.heads()
-	rows := [][]string{heads[0], heads[1]}
+	rows := r.heads()
+	above := len(rows)
 	for i := range r.Points {
 		rows = append(rows, r.row(&r.Points[i]))
 	}
@@ -59,8 +62,8 @@ func (r *Report) table(b *strings.Builder, colour bool) {
 	for i, row := range rows {
 		line := strings.Repeat(" ", len("FAIL"))
 		trouble := ""
-		if i > 1 {
-			p := &r.Points[i-2]
+		if i >= above {
+			p := &r.Points[i-above]
 			line = p.Lane.Word()
 			if line != "DONE" {
 				line = accept.Word(p.Lane.Pass, colour)
@@ -79,12 +82,12 @@ func (r *Report) table(b *strings.Builder, colour bool) {
 
 func (r *Report) row(p *Point) []string {
 	_, nrmse, late := p.tracking()
-	row := []string{quantity.Short(p.Slowdown, quantity.None), quantity.Short(rounded(p.Lasts), quantity.Time), accept.Share(nrmse), shortLate(late)}
+	row := []string{quantity.Short(p.Slowdown, quantity.None), quantity.Short(rounded(p.Lasts), quantity.None), percent(float64(nrmse)), milli(float64(late))}
 	if !r.Structure {
 		return row
 	}
-	return append(row, accept.Margin(p.Lane.Energy.MarginMin), p.marginText(),
-		percent(p.Split.Total), percent(p.Split.Sync), percent(p.Split.Rate), correlation(p.Split.Correlation))
+	energy := strings.TrimSuffix(accept.Margin(p.Lane.Energy.MarginMin), " %")
+	return append(row, energy, p.marginText(), percent(p.Split.Total), percent(p.Split.Sync), percent(p.Split.Rate), correlation(p.Split.Correlation))
 }
 
 // tracking finds the channel that tracks worst, its error and the delay of the
@@ -102,13 +105,16 @@ func (p *Point) tracking() (channel string, nrmse, late rtloop.Figure) {
 	return channel, nrmse, late
 }
 
-// shortLate writes a delay, negative when early, in milliseconds.
-func shortLate(f rtloop.Figure) string {
-	if !f.Defined() {
+// milli writes a delay in milliseconds, negative when early.
+func milli(v float64) string {
+	switch text := fmt.Sprintf("%.3f", 1e3*v); {
+	case math.IsNaN(v):
 		return "–"
+	case text == "-0.000":
+		return "0.000"
+	default:
+		return text
 	}
-	text := fmt.Sprintf("%.3f ms", 1e3*float64(f))
-	return strings.Replace(text, "-0.000 ", "0.000 ", 1)
 }
 
 func (p *Point) marginText() string {
@@ -120,14 +126,15 @@ func (p *Point) marginText() string {
 	case math.IsInf(p.DelayMargin, 1):
 		return "none"
 	}
-	return quantity.Format(p.DelayMargin, quantity.Time)
+	return strconv.FormatFloat(1e3*p.DelayMargin, 'g', 4, 64)
 }
 
+// percent writes a ratio in per cent, without the sign.
 func percent(v float64) string {
 	if v < nothing {
-		return "0 %"
+		return "0"
 	}
-	return accept.Share(rtloop.Figure(v))
+	return strings.TrimSuffix(accept.Share(rtloop.Figure(v)), " %")
 }
 
 func correlation(v float64) string {
