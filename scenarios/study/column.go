@@ -45,7 +45,7 @@ func suffix(d quantity.Dim) string {
 func SettingName(path string, s *kind.Setting) string { return path + suffix(s.Dim) }
 
 // Column is the name that the setting has as a column, with its unit.
-func (r *Range) Column() string { return settingName(r.Path, &r.Setting) }
+func (r *Range) Column() string { return SettingName(r.Path, &r.Setting) }
 
 // channelFigures are found for each channel.
 var channelFigures = []struct {
