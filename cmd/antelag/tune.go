@@ -66,7 +66,7 @@ workers. --record keeps all that was tried; the same command goes on with it.
 	f.StringVar(&o.time, "time", "", "how long the search may take, like \"20 s\"")
 	f.IntVar(&o.options.Workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
 	f.StringVar(&o.record, "record", "", "keep all that was tried in this CSV `file`, and go on with it")
-	f.StringVar(&o.write, "write", "", "write the scenario with the best settings to this `file`")
+	f.StringVar(&o.write, "write", "", "write the scenario with the best settings, if they pass, to this `file`")
 	f.StringVar(&o.png, "png", "", "draw accuracy against margin into this `file`, .png or .svg")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
@@ -86,7 +86,7 @@ func (o *tuneOptions) run(cmd *cobra.Command, args []string) error {
 		defer record.Close() //nolint:errcheck // every row is out when it has been appended
 	}
 	r, err := o.search(cmd.Context(), p, record)
-	if errors.Is(err, tune.ErrNothingRan) || r == nil || r.Best == nil {
+	if r == nil || r.Best == nil {
 		return &failure{err}
 	}
 	if e := o.print(cmd, r); e != nil {
@@ -233,7 +233,7 @@ func (o *tuneOptions) print(cmd *cobra.Command, r *tune.Result) error {
 
 // files writes the new scenario and the picture.
 func (o *tuneOptions) files(r *tune.Result) error {
-	if o.write != "" {
+	if o.write != "" && r.Pass() { // what does not pass is not to be used
 		s, err := r.Problem.Tuned(r.Best)
 		if err != nil {
 			return err
