@@ -60,10 +60,10 @@ tripped or diverged; 2 bad input.
 	}
 	o.log.flags(cmd)
 	f := cmd.Flags()
-	f.StringVar(&o.window, "window", "", "length of the windows over time, like \"4 s\" (default: that of the energy margin, or 5 s, at most an eighth of the record)")
-	f.Float64Var(&o.slowdown, "slowdown", 0, "physical seconds that a second of the log took (default: what the log's provenance says, or 1)")
+	f.StringVar(&o.window, "window", "", "`length` of the windows over time (default about 5 s, or that of the energy margin)")
+	f.Float64Var(&o.slowdown, "slowdown", 0, "physical seconds that a second of the log took (default: as the log was written)")
 	f.StringVar(&o.against, "against", "", "drive the actuator and lanes of this `SCENARIO` with the recorded target")
-	f.StringArrayVar(&o.sets, "set", nil, setHelp+", of the scenario of --against")
+	f.StringArrayVar(&o.sets, "set", nil, setHelp+"; of --against")
 	f.StringVar(&o.csv, "csv", "", "write the windows to this CSV `file`")
 	f.StringVar(&o.png, "png", "", "draw the windows into this `file`, PNG or SVG by its ending")
 	f.BoolVar(&o.live, "live", false, "play it on the dashboard's panels; ? shows the keys")

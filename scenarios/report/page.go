@@ -75,6 +75,37 @@ func (t *Test) PartID(i int) string { return fmt.Sprintf("test%d-%d", t.number, 
 // OverviewCells are the test's cells in the overview, the title not among them.
 func (t *Test) OverviewCells() []string { return t.overview }
 
+// Summary says how many tests there are and how many passed.
+func (v view) Summary() string {
+	count := map[string]int{}
+	for _, t := range v.Tests {
+		count[t.Word]++
+	}
+	var parts []string
+	for _, word := range []string{"PASS", "FAIL", "DONE", "RECORD"} {
+		if n := count[word]; n > 0 {
+			parts = append(parts, fmt.Sprintf("%d %s", n, summed[word]))
+		}
+	}
+	return fmt.Sprintf("Of %d tests: %s.", len(v.Tests), listed(parts))
+}
+
+var summed = map[string]string{"PASS": "passed", "FAIL": "failed", "DONE": "ran without limits to be judged by", "RECORD": "of records, which are not judged"}
+
+// Worst is the verdict on all tests together.
+func (v view) Worst() string {
+	worst := "PASS"
+	for _, t := range v.Tests {
+		switch {
+		case t.Word == "FAIL":
+			return "FAIL"
+		case t.Word != "PASS":
+			worst = "DONE"
+		}
+	}
+	return worst
+}
+
 // Several reports whether the page has more than one test.
 func (v view) Several() bool { return len(v.Tests) != 1 }
 

@@ -28,7 +28,8 @@ func (r *run) motions() Part {
 	}
 	for j := range r.s.Channels {
 		c := &r.s.Channels[j]
-		record := history{trace: r.rec.channels[j], time: r.rec.time, near: r.rec.strongest(j, r.rec.loop.Window()), name: c.Name,
+		record := history{trace: r.rec.channels[j], time: r.rec.time, name: c.Name,
+			near: r.rec.strongest(j, r.rec.loop.Window()), closest: r.rec.strongest(j, 0.3*r.rec.loop.Window()),
 			acceptError: number(r.s.Accept, "peak_error"), tripError: number(c.Limits, "error"), tripForce: number(c.Limits, "force"), timeWord: "model time"}
 		if r.v.Slowdown == 1 {
 			record.timeWord = "time"
@@ -52,7 +53,7 @@ func number(v kind.Values, name string) float64 {
 type history struct {
 	trace
 	time                              []float64
-	near                              span // where the target is largest
+	near, closest                     span // where the target is largest: some periods, and about one
 	name                              string
 	tick                              float64 // physical seconds from row to row
 	acceptError, tripError, tripForce float64
@@ -75,7 +76,7 @@ func (h *history) pictures() []Picture {
 func (h *history) tracking() Picture {
 	at := timeAxis
 	at.Label = h.timeWord
-	zoom := h.near.middle(0.3)
+	zoom := h.closest
 	near := func(v []float64) []float64 { return v[zoom.from:zoom.to] }
 	whole := figure.Panel{X: at, Y: moveAxis, Share: 1.1, Lines: []figure.Line{
 		{Name: "target", X: h.time, Y: scaled(h.target, mm)}, {Name: "measured", X: h.time, Y: scaled(h.measured, mm)}}}

@@ -8,17 +8,15 @@ import (
 	"antelag/scenarios"
 )
 
-// recorder keeps the history of the configured lane for the pictures. Of a run
-// that is longer than mostRows ticks it keeps every second, fourth, … one, so
-// that memory is bounded; the figures of the verdict come from every tick.
-type recorder struct {
+// rows keep a history for the pictures. Of one longer than mostRows ticks they
+// keep every second, fourth, … tick, so that memory is bounded; the figures of
+// the verdict come from every tick.
+type rows struct {
 	channels []trace
-	time     []float64 // model seconds
+	time     []float64 // s
 	margin   []float64 // energy margin, NaN while undefined
 	stride   int64     // ticks from one kept row to the next
-	loop     *rtloop.Loop
-	bands    []*gauge.Record // how measured answers target, by channel
-	response [][]gauge.Band
+	seen     int64
 }
 
 // trace is the history of one channel: m, m, m, N.
@@ -26,9 +24,47 @@ type trace struct{ target, command, measured, force []float64 }
 
 const mostRows = 1 << 19
 
-func newRecorder(s *scenarios.Scenario) *recorder {
-	return &recorder{channels: make([]trace, len(s.Channels)), stride: 1}
+func newRows(channels int) *rows { return &rows{channels: make([]trace, channels), stride: 1} }
+
+// keep reports whether the next row is to be kept.
+func (r *rows) keep() bool {
+	k := r.seen
+	r.seen++
+	if k%r.stride != 0 {
+		return false
+	}
+	if len(r.time) == mostRows {
+		r.halve()
+	}
+	return k%r.stride == 0
 }
+
+// halve drops every second row.
+func (r *rows) halve() {
+	half := func(v []float64) []float64 {
+		n := (len(v) + 1) / 2
+		for i := range n {
+			v[i] = v[2*i]
+		}
+		return v[:n]
+	}
+	r.stride *= 2
+	r.time, r.margin = half(r.time), half(r.margin)
+	for j := range r.channels {
+		t := &r.channels[j]
+		t.target, t.command, t.measured, t.force = half(t.target), half(t.command), half(t.measured), half(t.force)
+	}
+}
+
+// recorder keeps the history of the configured lane of a run.
+type recorder struct {
+	*rows
+	loop     *rtloop.Loop
+	bands    []*gauge.Record // how measured answers target, by channel
+	response [][]gauge.Band
+}
+
+func newRecorder(s *scenarios.Scenario) *recorder { return &recorder{rows: newRows(len(s.Channels))} }
 
 // observe is an accept.Options.Observe.
 func (r *recorder) observe(lane string) func(*rtloop.Loop) error {
@@ -58,14 +94,8 @@ func (r *recorder) row(l *rtloop.Loop) error {
 			r.bands[j].Add(row.Target, row.Measured)
 		}
 	}
-	if l.Ticks()%r.stride != 0 {
+	if !r.keep() {
 		return nil
-	}
-	if len(r.time) == mostRows {
-		r.halve()
-		if l.Ticks()%r.stride != 0 {
-			return nil
-		}
 	}
 	r.time, r.margin = append(r.time, l.Time()), append(r.margin, l.Margin())
 	for j := range r.channels {
@@ -74,23 +104,6 @@ func (r *recorder) row(l *rtloop.Loop) error {
 		t.measured, t.force = append(t.measured, row.Measured), append(t.force, row.Force)
 	}
 	return nil
-}
-
-// halve drops every second row.
-func (r *recorder) halve() {
-	half := func(v []float64) []float64 {
-		n := (len(v) + 1) / 2
-		for i := range n {
-			v[i] = v[2*i]
-		}
-		return v[:n]
-	}
-	r.stride *= 2
-	r.time, r.margin = half(r.time), half(r.margin)
-	for j := range r.channels {
-		t := &r.channels[j]
-		t.target, t.command, t.measured, t.force = half(t.target), half(t.command), half(t.measured), half(t.force)
-	}
 }
 
 // finish works out what needs the whole run.
@@ -104,17 +117,9 @@ func (r *recorder) finish() {
 // span is a stretch of rows, from the first to before the last.
 type span struct{ from, to int }
 
-// middle is the middle of a stretch, a share of it.
-func (s span) middle(share float64) span {
-	n := s.to - s.from
-	rows := min(n, max(2, int(share*float64(n))))
-	from := s.from + (n-rows)/2
-	return span{from, from + rows}
-}
-
-// strongest is the stretch of about so many model seconds in whose middle the
-// target of channel j is largest.
-func (r *recorder) strongest(j int, seconds float64) span {
+// strongest is the stretch of about so many seconds of r.time in whose middle
+// the target of channel j is largest.
+func (r *rows) strongest(j int, seconds float64) span {
 	best := 0
 	for i, x := range r.channels[j].target {
 		if math.Abs(x) > math.Abs(r.channels[j].target[best]) {

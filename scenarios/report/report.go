@@ -9,11 +9,13 @@ package report
 
 import (
 	"context"
+	"fmt"
 	"html/template"
 
 	"antelag/scenarios"
 	"antelag/scenarios/accept"
 	"antelag/scenarios/report/figure"
+	"antelag/scenarios/study/margin"
 )
 
 // Page is the whole report.
@@ -72,6 +74,7 @@ type Picture struct {
 type Options struct {
 	Sets     []string // what the scenario was changed by, PATH=VALUE, to be said
 	Sweep    string   // the table of a sweep of the scenario, a CSV file; "": none
+	Map      string   // the two settings of the stability map, "X=a:b:n,Y=a:b:n"; "": chosen
 	Progress func(done, of int64)
 }
 
@@ -80,7 +83,12 @@ type Options struct {
 func Run(ctx context.Context, s *scenarios.Scenario, o Options) (*Test, error) {
 	spread, err := readSpread(o.Sweep, s)
 	if err != nil {
-		return nil, err
+		return nil, fmt.Errorf("sweep: %w", err)
+	}
+	if o.Map != "" {
+		if _, _, err := margin.ParseMap(s, o.Map); err != nil {
+			return nil, fmt.Errorf("map: %w", err)
+		}
 	}
 	rec := newRecorder(s)
 	v, err := accept.Run(ctx, s, accept.Options{Progress: o.Progress, Observe: rec.observe})
@@ -107,15 +115,21 @@ func (r *run) report(ctx context.Context) (*Test, error) {
 		Name: r.s.Name, Title: r.s.Title, Question: r.question(), Word: r.lane.Word(), Pass: r.v.Pass(),
 		Verdict: r.verdict(), Verdicts: r.v, overview: r.overview(),
 	}
-	response, err := r.response(ctx)
+	provenance, err := r.provenance()
 	if err != nil {
 		return nil, err
 	}
-	parts := []Part{r.acceptance(), r.compared(), r.motions(), r.energyPart(), response}
-	parts = append(parts, r.stability(ctx)...)
-	parts = append(parts, r.spreadPart(), r.reached(), r.structure())
+	parts := []Part{r.acceptance(), r.compared(), r.motions(), r.energyPart()}
+	// The parts that have run are taken to the bench: nothing after this may ask
+	// the loop for what it did, but for its coefficients.
+	parts = append(parts, r.response(ctx))
+	stability, err := r.stability(ctx)
+	if err != nil {
+		return nil, err
+	}
+	parts = append(parts, stability, r.spreadPart(), r.reached(), r.structure())
 	parts = append(parts, r.channels()...)
-	parts = append(parts, r.assumptions(), r.provenance())
+	parts = append(parts, r.assumptions(), provenance)
 	for _, p := range parts {
 		if !p.empty() {
 			t.Parts = append(t.Parts, p)

@@ -7,6 +7,7 @@ import (
 
 	"antelag/compensator"
 	"antelag/plant"
+	"antelag/rtloop"
 	"antelag/rtloop/gauge"
 	"antelag/scenarios/report/figure"
 )
@@ -134,15 +135,12 @@ func (r *run) band() (low, high float64) {
 }
 
 // response measures and draws compensator × actuator of every channel.
-func (r *run) response(ctx context.Context) (Part, error) {
+func (r *run) response(ctx context.Context) Part {
 	p := Part{Heading: "Frequency response of compensator and actuator"}
 	low, high := r.band()
 	n := 1 + int(math.Round(perDecade*math.Log10(high/low)))
 	for j := range r.s.Channels {
-		bench, amplitude, err := r.probe(j)
-		if err != nil {
-			return p, err
-		}
+		bench, amplitude := r.probe(j), r.amplitude(j)
 		var all []answer
 		for i := range n {
 			if ctx.Err() != nil {
@@ -167,7 +165,7 @@ func (r *run) response(ctx context.Context) (Part, error) {
 	if len(p.Pictures) > 0 {
 		p.Text = append(p.Text, "Measured on the compensator and the actuator that ran, by driving them with sines, the actuator on its specimen; adaptive compensators with the coefficients that they had at the end of the run. Where both together keep the amplitude at 100 % and the delay at 0, the test is what it should be.")
 	}
-	return p, nil
+	return p
 }
 
 // phasors name the three curves.
@@ -195,11 +193,17 @@ func (r *run) responsePicture(j int, all []answer, amplitude float64) Picture {
 	}
 	size.Y.High = ceiling(all)
 	var f, a, d []float64
-	for _, b := range inside(r.rec.response[j], all[0].hz, all[len(all)-1].hz) {
+	ran := r.rec.response[j]
+	if r.lane.Outcome != rtloop.Completed {
+		ran = nil // a piece of a run, perhaps one that grew, says little
+	}
+	for _, b := range inside(ran, all[0].hz, all[len(all)-1].hz) {
 		f, a, d = append(f, b.Frequency), append(a, 100*b.Amplitude), append(d, 1e3*b.Delay)
 	}
-	size.Lines = append(size.Lines, figure.Line{Name: "together, in this run", X: f, Y: a, Points: true})
-	late.Lines = append(late.Lines, figure.Line{Name: "together, in this run", X: f, Y: d, Points: true})
+	if len(f) > 0 {
+		size.Lines = append(size.Lines, figure.Line{Name: "together, in this run", X: f, Y: a, Points: true})
+		late.Lines = append(late.Lines, figure.Line{Name: "together, in this run", X: f, Y: d, Points: true})
+	}
 	if st := r.rec.loop.Structure(); st != nil {
 		for i, w := range st.Frequencies() {
 			if i < 3 {
@@ -210,8 +214,12 @@ func (r *run) responsePicture(j int, all []answer, amplitude float64) Picture {
 		}
 	}
 	name := r.s.Channels[j].Name
+	caption := fmt.Sprintf("Sines of at most %.3g mm.", amplitude*mm)
+	if len(f) > 0 {
+		caption += " Points: how measured answered target in this run, by thirds of an octave."
+	}
 	return Picture{Name: name + "-response",
-		Caption: fmt.Sprintf("Sines of at most %.3g mm. Points: how measured answered target in this run, by thirds of an octave.", amplitude*mm),
+		Caption: caption,
 		Figure:  figure.Figure{Title: "Channel " + name + ": frequency response", Panels: []figure.Panel{size, late}}}
 }
 
@@ -237,43 +245,12 @@ func inside(bands []gauge.Band, low, high float64) []gauge.Band {
 	return out
 }
 
-// probe takes channel j to the bench: its actuator and specimen anew, its
-// compensator anew, and the amplitude to drive it with, m.
-func (r *run) probe(j int) (*probe, float64, error) {
-	c, tick := &r.s.Channels[j], 1/r.v.Rate
-	p := &probe{tick: tick, driven: r.s.Substructure == nil}
-	comp, err := compensator.Kinds.Find(c.Compensator.Kind.Name)
-	if err != nil {
-		return nil, 0, err
-	}
-	if p.compensator, err = comp.New(tick, c.Compensator.Values); err != nil {
-		return nil, 0, err
-	}
-	act, err := plant.Actuators.Find(c.Actuator.Kind.Name)
-	if err != nil {
-		return nil, 0, err
-	}
-	timing := plant.Timing{Tick: tick}
-	if r.s.Loop.Text("hold") == "step" {
-		timing.Hold = plant.Step
-	}
-	if p.actuator, err = act.New(timing, c.Actuator.Values); err != nil {
-		return nil, 0, err
-	}
-	var elements []plant.Element
-	for _, e := range c.Specimen {
-		entry, err := plant.Elements.Find(e.Kind.Name)
-		if err != nil {
-			return nil, 0, err
-		}
-		element, err := entry.New(e.Values)
-		if err != nil {
-			return nil, 0, err
-		}
-		elements = append(elements, element)
-	}
-	p.specimen = plant.NewSpecimen(elements...)
-	return p, r.amplitude(j), nil
+// probe takes the parts of channel j, which have run, to the bench: the actuator
+// on its specimen, and the compensator with the coefficients that it ended with.
+func (r *run) probe(j int) *probe {
+	c := r.rec.loop.Part(j)
+	return &probe{compensator: compensator.Frozen(c.Compensator), actuator: c.Actuator, specimen: c.Specimen,
+		tick: r.rec.loop.Period(), driven: r.s.Substructure == nil}
 }
 
 // amplitude of the sines, m: a fifth of the peak target, so that a yielding

@@ -6,21 +6,25 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"math"
 	"os"
 	"path/filepath"
 	"slices"
 	"strconv"
+	"strings"
 
 	"antelag/scenarios"
 	"antelag/scenarios/accept"
 	"antelag/scenarios/report/figure"
+	"antelag/scenarios/study"
 )
 
 // spreadTable is what the table of a sweep says of the figures that the
 // scenario judges.
 type spreadTable struct {
 	name    string
+	note    string   // what is odd about it, "" if nothing
 	figures []string // the names of the limits
 	values  [][]float64
 	runs    int
@@ -51,7 +55,39 @@ func readSpread(path string, s *scenarios.Scenario) (*spreadTable, error) {
 		return nil, fmt.Errorf("%s: %w", path, err)
 	}
 	t.name = filepath.Base(path)
-	return t, nil
+	t.note, err = belongs(path+".toml", s)
+	return t, err
+}
+
+// belongs says what is odd about the scenario that a table is of, by the
+// provenance beside it.
+func belongs(beside string, s *scenarios.Scenario) (string, error) {
+	text, err := os.ReadFile(beside)
+	if errors.Is(err, fs.ErrNotExist) {
+		return "Nothing beside the table says that it is of this scenario.", nil
+	}
+	if err != nil {
+		return "", err
+	}
+	st, _, _, err := study.Recorded(beside, text, filepath.Dir(beside))
+	if err != nil {
+		return "", err
+	}
+	theirs, ours := strings.Split(st.Scenario.Resolved(), "\n"), strings.Split(s.Resolved(), "\n")
+	for i := range max(len(theirs), len(ours)) {
+		a, b := lineOf(theirs, i), lineOf(ours, i)
+		if a != b {
+			return fmt.Sprintf("The table is of a scenario that differs from this one: there %s, here %s.", a, b), nil
+		}
+	}
+	return "", nil
+}
+
+func lineOf(lines []string, i int) string {
+	if i < len(lines) {
+		return lines[i]
+	}
+	return "nothing more"
 }
 
 func parseSpread(in io.Reader, s *scenarios.Scenario) (*spreadTable, error) {
@@ -132,7 +168,10 @@ func (r *run) spreadPart() Part {
 		text += fmt.Sprintf(": %d passed, %d did not", t.passed, t.runs-t.passed)
 	}
 	p.Text = []string{text + ". A figure that is undefined counts as worse than any other."}
-	panel := figure.Panel{X: figure.Axis{Label: "used up of the limit", Unit: "%"}, Y: figure.Axis{Label: "share of the runs at or below", Unit: "%", Low: 0, High: 105},
+	if t.note != "" {
+		p.Text = append(p.Text, t.note)
+	}
+	panel := figure.Panel{X: figure.Axis{Label: "used up of the limit", Unit: "%", Low: 0, High: math.NaN()}, Y: figure.Axis{Label: "share of the runs at or below", Unit: "%", Low: 0, High: 105},
 		Levels: []figure.Level{{Name: "limit", Value: 100, Vertical: true}}}
 	table := Table{Caption: "Figures over the runs of the sweep", Head: []string{"figure", "median run", "95th of 100 runs", "worst run", "allowed", "runs beyond"}}
 	for i, name := range t.figures {

@@ -30,7 +30,7 @@ func (r *run) acceptance() Part {
 		j := &r.lane.Accept[i]
 		row := Row{word(j.Pass), j.Label(), j.Found(), j.Allowed(), j.Room()}
 		if several {
-			row = append(row, j.Channel)
+			row = append(row, dash(j.Channel))
 		}
 		t.Rows = append(t.Rows, row)
 	}

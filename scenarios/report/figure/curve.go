@@ -39,6 +39,9 @@ func (c *curve) Plot(canvas draw.Canvas, p *plot.Plot) {
 			for i, k := range piece {
 				path[i] = vg.Point{X: tx(c.line.X[k]), Y: ty(c.line.Y[k])}
 			}
+			if len(path) == 1 && !c.line.Points {
+				canvas.DrawGlyph(c.pen.glyph(), path[0])
+			}
 			paths = append(paths, canvas.ClipLinesXY(thin(path))...)
 		}
 		canvas.StrokeLines(c.stroke(canvas, paths), paths...)

@@ -25,6 +25,11 @@ func (n notes) free(r vg.Rectangle) bool {
 // write puts words at the first of some places (their lower left corners) that
 // lies inside and is free, or at the first.
 func (n *notes) write(c draw.Canvas, style text.Style, words string, places ...vg.Point) {
+	n.place(c, style, words, true, places)
+}
+
+// place is write; without must it leaves the words out where no place is free.
+func (n *notes) place(c draw.Canvas, style text.Style, words string, must bool, places []vg.Point) {
 	wide, high := style.Width(words), style.Font.Size
 	at := func(p vg.Point) vg.Rectangle {
 		return vg.Rectangle{Min: vg.Point{X: p.X - 1.5, Y: p.Y - 0.25*high}, Max: vg.Point{X: p.X + wide + 1.5, Y: p.Y + 0.9*high}}
@@ -33,9 +38,12 @@ func (n *notes) write(c draw.Canvas, style text.Style, words string, places ...v
 	for _, p := range places {
 		r := at(p)
 		if r.Min.X >= c.Min.X && r.Max.X <= c.Max.X && r.Min.Y >= c.Min.Y && r.Max.Y <= c.Max.Y && n.free(r) {
-			box, corner = r, p
+			box, corner, must = r, p, true
 			break
 		}
+	}
+	if !must {
+		return
 	}
 	*n = append(*n, box)
 	back := paper

@@ -71,7 +71,7 @@ func (p pen) stroke() draw.LineStyle {
 }
 
 func (p pen) glyph() draw.GlyphStyle {
-	return draw.GlyphStyle{Color: p.colour, Radius: 2, Shape: p.marker}
+	return draw.GlyphStyle{Color: p.colour, Radius: 2.5, Shape: p.marker}
 }
 
 // limitStroke draws limits.
