@@ -12,8 +12,6 @@ import (
 	"time"
 
 	"github.com/gdamore/tcell/v2"
-
-	"antelag/rtloop/runlog"
 )
 
 // recorded writes an invented log of two channels at 256 Hz: each follows a
@@ -36,7 +34,7 @@ func recorded(t *testing.T, seconds float64) string {
 
 func played(t *testing.T, path string) *player {
 	t.Helper()
-	p, err := newPlayer(path, runlog.Options{Need: []runlog.Role{runlog.Target, runlog.Measured}})
+	p, err := newPlayer(path, PlayOptions{Slowdown: 1, Speed: 1})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -132,7 +130,7 @@ func TestPlayOnATerminal(t *testing.T) {
 	path := recorded(t, 20)
 	done := make(chan error, 1)
 	go func() {
-		done <- play(context.Background(), path, runlog.Options{}, func(context.Context) (float64, []Moment, error) {
+		done <- play(context.Background(), path, PlayOptions{Slowdown: 1, Speed: 1}, func(context.Context) (float64, []Moment, error) {
 			return 19.996, []Moment{{12.5, "late by 16 ms"}}, nil
 		}, sim)
 	}()

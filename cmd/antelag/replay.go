@@ -1,19 +1,23 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
 	"io"
 	"io/fs"
 	"os"
+	"slices"
 
 	"github.com/spf13/cobra"
 
+	"antelag/rtloop/runlog"
 	"antelag/scenarios"
 	"antelag/scenarios/quantity"
 	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study/replay"
+	"antelag/tui"
 )
 
 // replayOptions are the flags of replay.
@@ -24,6 +28,8 @@ type replayOptions struct {
 	against  string
 	sets     []string
 	csv, png string
+	live     bool
+	speed    float64
 	force    bool
 	json     bool
 }
@@ -54,12 +60,14 @@ tripped or diverged; 2 bad input.
 	}
 	o.log.flags(cmd)
 	f := cmd.Flags()
-	f.StringVar(&o.window, "window", "", "length of the windows over time, like \"4 s\" (default: that of the energy margin, or 5 s, at most an eighth of the record)")
-	f.Float64Var(&o.slowdown, "slowdown", 0, "physical seconds that a second of the log took (default: what the log's provenance says, or 1)")
+	f.StringVar(&o.window, "window", "", "`length` of the windows over time (default about 5 s, or that of the energy margin)")
+	f.Float64Var(&o.slowdown, "slowdown", 0, "physical seconds that a second of the log took (default: as the log was written)")
 	f.StringVar(&o.against, "against", "", "drive the actuator and lanes of this `SCENARIO` with the recorded target")
-	f.StringArrayVar(&o.sets, "set", nil, setHelp+", of the scenario of --against")
+	f.StringArrayVar(&o.sets, "set", nil, setHelp+"; of --against")
 	f.StringVar(&o.csv, "csv", "", "write the windows to this CSV `file`")
 	f.StringVar(&o.png, "png", "", "draw the windows into this `file`, PNG or SVG by its ending")
+	f.BoolVar(&o.live, "live", false, "play it on the dashboard's panels; ? shows the keys")
+	f.Float64Var(&o.speed, "speed", 1, "how many times as fast as the test --live begins to play, 1/64 to 64")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
@@ -69,6 +77,9 @@ func (o *replayOptions) run(cmd *cobra.Command, args []string) error {
 	options, err := o.options(args[0], cmd.Flags().Changed("slowdown"))
 	if err != nil {
 		return err
+	}
+	if o.live {
+		return o.play(cmd.Context(), args[0], options)
 	}
 	rep, err := o.replay(cmd.Context(), args[0], options)
 	if err != nil {
@@ -121,6 +132,49 @@ func (o *replayOptions) options(log string, slowed bool) (replay.Options, error)
 	}
 	out.Against, err = o.load()
 	return out, err
+}
+
+// play plays the log on the terminal. Bad input comes before the want of one.
+func (o *replayOptions) play(ctx context.Context, log string, options replay.Options) error {
+	if o.csv != "" || o.png != "" || o.json || o.against != "" {
+		return errors.New("--live shows the log and writes nothing: leave out --csv, --png, --json and --against")
+	}
+	if !(o.speed >= tui.SlowestPlay && o.speed <= tui.FastestPlay) {
+		return fmt.Errorf("--speed %g: it must be between 1/64 and 64", o.speed)
+	}
+	opened, err := replay.Open(log, options)
+	if err != nil {
+		return err
+	}
+	slowdown := opened.Slowdown()
+	if err := opened.Close(); err != nil {
+		return err
+	}
+	if !onTerminal() {
+		return errors.New("replay --live needs a terminal on stdin and stdout; without --live it prints what the log says")
+	}
+	options.Log.Need = []runlog.Role{runlog.Target, runlog.Measured}
+	return onDashboard(tui.Play(ctx, log, tui.PlayOptions{Log: options.Log, Slowdown: slowdown, Speed: o.speed},
+		func(ctx context.Context) (float64, []tui.Moment, error) { return overview(ctx, log, options) }))
+}
+
+// overview is what the whole log says, for the dashboard.
+func overview(ctx context.Context, log string, options replay.Options) (end float64, worst []tui.Moment, err error) {
+	rep, err := replay.Of(ctx, log, options)
+	if err != nil {
+		return 0, nil, err
+	}
+	for _, c := range rep.Channels {
+		for _, m := range c.Worst {
+			text := m.Words()
+			if len(rep.Channels) > 1 {
+				text = c.Name + ": " + text
+			}
+			worst = append(worst, tui.Moment{Time: float64(m.End), Text: text})
+		}
+	}
+	slices.SortStableFunc(worst, func(a, b tui.Moment) int { return cmp.Compare(a.Time, b.Time) })
+	return float64(rep.Start + rep.Time), worst, nil
 }
 
 func (o *replayOptions) load() (*scenarios.Scenario, error) {

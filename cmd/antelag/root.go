@@ -49,7 +49,7 @@ func newRoot() *cobra.Command {
 		newReplay(),
 		newMargin(),
 		newSweep(),
-		newGather(),
+		newGather(), newTune(),
 		newCheck(),
 		newHandoff(),
 		newReport(), newPace(),

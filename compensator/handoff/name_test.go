@@ -1,7 +1,6 @@
 package handoff
 
 import (
-	"regexp"
 	"slices"
 	"strings"
 	"testing"
@@ -32,16 +31,6 @@ func TestIdentifiers(t *testing.T) {
 		got := identifiers(channels)
 		if !slices.Equal(got, c.want) {
 			t.Errorf("%s: %v, want %v", c.name, got, c.want)
-		}
-	}
-}
-
-// Every kind's words are written in ASCII without escapes.
-func TestEquationsInASCII(t *testing.T) {
-	for _, v := range variants() {
-		files, _ := written(t, of(t, v, 2048, usual))
-		if e := regexp.MustCompile(`\\[ux].*`).FindString(files["antelag_damper.h"]); e != "" {
-			t.Errorf("%v: %q has no letters of its own", v, e)
 		}
 	}
 }

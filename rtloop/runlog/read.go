@@ -95,7 +95,11 @@ func Open(path string, o Options) (*Reader, error) {
 	if err != nil {
 		return nil, err
 	}
-	r := &Reader{path: path, source: s, buf: make([]byte, readSize)}
+	size := int64(readSize)
+	if s.size > 0 && !s.packed {
+		size = min(size, s.size+1) // the byte more shows the end
+	}
+	r := &Reader{path: path, source: s, buf: make([]byte, size)}
 	if err := r.open(&o); err != nil {
 		s.Close()
 		return nil, err

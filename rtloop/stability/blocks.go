@@ -44,5 +44,6 @@ func (m *Model) Take(from *Model, b Blocks) *Model {
 		}
 		out.states += c.plant.core.n
 	}
+	out.measure()
 	return &out
 }

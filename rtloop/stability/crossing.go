@@ -210,6 +210,9 @@ func (w *walker) plain(a, m, b looked) bool {
 		if max(sx, sy, sz) < faint || sx == 0 || sy == 0 || sz == 0 {
 			continue
 		}
+		if (b.angle-a.angle)*w.e.m.longest > 2*mostTurn {
+			return false
+		}
 		if math.Abs(cmplx.Phase(y/x)) > mostTurn || math.Abs(cmplx.Phase(z/y)) > mostTurn {
 			return false
 		}

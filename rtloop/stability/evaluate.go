@@ -79,6 +79,20 @@ func (e *evaluator) around(z complex128) scaled {
 	return det
 }
 
+// returned is how much comes back in a channel at most, of forces of size 1 in all,
+// where around was last.
+func (e *evaluator) returned() float64 {
+	n, most := len(e.m.channels), 0.0
+	for i := range n {
+		sum := 0.0
+		for _, v := range e.loop[i*n : (i+1)*n] {
+			sum += size1(v)
+		}
+		most = max(most, sum)
+	}
+	return most
+}
+
 // plant is T(z), and the determinant of its core.
 func (e *evaluator) plant(p *plantBlock, z, w, lz complex128) (answer complex128, det scaled) {
 	side := e.side[:p.core.n]

@@ -34,6 +34,7 @@ type Model struct {
 	levels    int
 	starts    []complex128
 	angles    []float64 // where F may turn quickly
+	longest   float64   // dead time of a channel, compensator included, ticks
 }
 
 // channelBlock is one channel.
@@ -77,7 +78,26 @@ func NewModel(linear *rtloop.Loop) (*Model, error) {
 		m.states += c.plant.core.n
 	}
 	m.guess(linear)
+	m.measure()
 	return m, nil
+}
+
+// measure finds the longest dead time.
+func (m *Model) measure() {
+	m.longest = 0
+	for j := range m.channels {
+		ticks := 0.0
+		for _, t := range m.channels[j].plant.terms {
+			ticks = max(ticks, t.ticks)
+		}
+		oldest := 0.0
+		for _, t := range m.channels[j].fir {
+			if len(t) > 0 {
+				oldest = max(oldest, t[len(t)-1].ago)
+			}
+		}
+		m.longest = max(m.longest, ticks+oldest)
+	}
 }
 
 // setStructure disturbs what the integrator carries.

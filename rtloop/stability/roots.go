@@ -186,25 +186,37 @@ func settle(z complex128) complex128 {
 	return complex(real(z), math.Abs(imag(z)))
 }
 
-// outermost looks for a zero outside the circle that is not known. Where there are
-// many it looks from the largest circle outside which there still is one.
+// outermost looks for a zero outside the circle that is not known: there, and, where
+// that leads nowhere or there are many, between the largest circle outside which
+// there is one and the smallest outside which there is none, drawn closer and closer.
 func (e *evaluator) outermost(c *circle, beyond int, known []complex128) (complex128, bool) {
-	far := *c
-	for share := 0.01; beyond > 2 && share < 1e3; share *= 2 {
-		next := circle{e: e, radius: c.radius * (1 + share), known: known}
+	if beyond <= 2 {
+		if r, ok := e.beyond(c, c.radius, known); ok {
+			return r, true
+		}
+	}
+	low, high := c.radius, 0.0
+	next := circle{e: e, known: known}
+	for share, step := 0.01, 0; step < 24; step++ {
+		if high == 0 {
+			next.radius = c.radius * (1 + share)
+			share *= 2
+		} else {
+			next.radius = math.Sqrt(low * high)
+		}
 		n, ok := next.zeros(e.nodes())
-		if !ok || n == 0 {
+		if !ok || high > 0 || n == 0 {
 			if r, ok := e.beyond(&next, c.radius, known); ok {
 				return r, true
 			}
-			break
 		}
-		far, beyond = next, n
+		if ok && n > 0 {
+			low = next.radius
+		} else {
+			high = next.radius
+		}
 	}
-	if r, ok := e.beyond(&far, c.radius, known); ok {
-		return r, true
-	}
-	return e.beyond(c, c.radius, known)
+	return 0, false
 }
 
 // beyond looks for a zero outside a radius that is not known, from the places on a
@@ -256,17 +268,18 @@ type circle struct {
 // dip is a place where the size of F is less than around it.
 type dip struct{ angle, log float64 }
 
-// sample is F at one angle.
+// sample is F at one angle, and how much comes back there of a force.
 type sample struct {
 	angle float64
 	f     scaled
 	log   float64
+	loud  bool
 }
 
 func (c *circle) sample(angle float64) sample {
 	c.left--
 	f := c.e.deflated(cmplx.Rect(c.radius, angle), c.known)
-	return sample{angle, f, f.log()}
+	return sample{angle, f, f.log(), c.e.returned() > quiet}
 }
 
 // zeros goes along the upper half of the circle; the lower is its mirror image.
@@ -289,10 +302,15 @@ func (c *circle) zeros(nodes []float64) (n int, ok bool) {
 		}
 		older, last = last, next
 	}
+	c.dips = append(c.dips, dip{last.angle, last.log}) // a real one lies at the end
 	turns := -turned / math.Pi
 	whole := math.Round(turns)
 	return int(whole), math.Abs(turns-whole) < 0.1
 }
+
+// quiet is how little may come back for det(I − L) to stay near 1 wherever its phases
+// are.
+const quiet = 0.2
 
 // How far F may turn, rad, and how much its logarithm may bend in half a piece, for
 // it to be followed without doubt.
@@ -305,7 +323,8 @@ func (c *circle) turn(a, b sample, depth int) (float64, bool) {
 	}
 	m := c.sample(0.5 * (a.angle + b.angle))
 	first, second := turned(a, m), turned(m, b)
-	if math.Abs(first) < mostTurn && math.Abs(second) < mostTurn && math.Abs(m.log-0.5*(a.log+b.log)) < mostBend {
+	coarse := (a.loud || m.loud || b.loud) && (b.angle-a.angle)*c.e.m.longest > mostTurn*2
+	if !coarse && math.Abs(first) < mostTurn && math.Abs(second) < mostTurn && math.Abs(m.log-0.5*(a.log+b.log)) < mostBend {
 		return first + second, true
 	}
 	if m.log < a.log && m.log < b.log {

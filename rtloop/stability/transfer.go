@@ -31,7 +31,7 @@ func newTransfer(n int, a []float64) (*transfer, error) {
 		}
 	}
 	var impl gonum.Implementation
-	scale, tau, work := make([]float64, n), make([]float64, max(1, n-1)), make([]float64, 4*n+4)
+	scale, tau, work := make([]float64, n), make([]float64, n-1), make([]float64, 4*n+4)
 	impl.Dgebal(lapack.Scale, n, t.h, n, scale)
 	impl.Dgehrd(n, 0, n-1, t.h, n, tau, work, len(work))
 	copy(t.q, t.h)

@@ -24,11 +24,11 @@ func (s *Summary) MarshalJSON() ([]byte, error) {
 	}
 	for i := range st.Grid {
 		a := &st.Grid[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(a.Path, &a.Setting), a.Low, a.High, a.N, a.Log, false})
+		out.Settings = append(out.Settings, settingJSON{SettingName(a.Path, &a.Setting), a.Low, a.High, a.N, a.Log, false})
 	}
 	for i := range st.Spread {
 		sp := &st.Spread[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(sp.Path, &sp.Setting), sp.Low, sp.High, 0, false, true})
+		out.Settings = append(out.Settings, settingJSON{SettingName(sp.Path, &sp.Setting), sp.Low, sp.High, 0, false, true})
 	}
 	for i := range s.Figures {
 		t := &s.Figures[i]

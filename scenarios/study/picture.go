@@ -55,18 +55,24 @@ func scale(d quantity.Dim, largest float64) (unit string, by float64) {
 	return unit, u.SI(1)
 }
 
-// axis is the axis of a figure, in per cent where it is a ratio.
-func (c *Column) axis(largest float64) (a figure.Axis, by float64) {
-	a.Label = c.Label
-	if c.Dim == quantity.None {
+// FigureAxis is the axis of a figure, in per cent where it is a ratio, with what SI
+// values are divided by.
+func FigureAxis(label string, d quantity.Dim, largest float64) (a figure.Axis, by float64) {
+	a.Label = label
+	if d == quantity.None {
 		a.Unit = "%"
 		return a, 0.01
 	}
-	a.Unit, by = scale(c.Dim, largest)
+	a.Unit, by = scale(d, largest)
 	return a, by
 }
 
-func settingAxis(r *Axis) (a figure.Axis, by float64) {
+func (c *Column) axis(largest float64) (a figure.Axis, by float64) {
+	return FigureAxis(c.Label, c.Dim, largest)
+}
+
+// SettingAxis is the axis of a setting.
+func SettingAxis(r *Range) (a figure.Axis, by float64) {
 	a.Label, a.Log = r.Path, r.Log
 	a.Unit, by = scale(r.Setting.Dim, r.High)
 	return a, by
@@ -74,7 +80,7 @@ func settingAxis(r *Axis) (a figure.Axis, by float64) {
 
 // curves draws every pictured figure against the one setting of the grid.
 func (s *Summary) curves() []figure.Panel {
-	x, byX := settingAxis(&s.Study.Grid[0])
+	x, byX := SettingAxis(&s.Study.Grid[0].Range)
 	var panels []figure.Panel
 	for _, i := range s.pictured() {
 		t := &s.Figures[i]
@@ -126,8 +132,8 @@ func (t *Tally) level(unit string, by float64, vertical bool) []figure.Level {
 func (s *Summary) plane() figure.Panel {
 	i := s.main()
 	t, slow, fast := &s.Figures[i], &s.Study.Grid[0], &s.Study.Grid[1]
-	x, byX := settingAxis(fast)
-	y, byY := settingAxis(slow)
+	x, byX := SettingAxis(&fast.Range)
+	y, byY := SettingAxis(&slow.Range)
 	m := &figure.Map{}
 	largest := 0.0
 	for k := range fast.N {
@@ -177,7 +183,7 @@ func (s *Summary) distributions() []figure.Panel {
 		x, by := c.axis(largest)
 		line := figure.Line{}
 		add := func(bad, share float64) {
-			line.X, line.Y = append(line.X, c.good(bad)/by), append(line.Y, 100*share)
+			line.X, line.Y = append(line.X, c.Good(bad)/by), append(line.Y, 100*share)
 		}
 		before := 0.0
 		t.sketch.steps(func(v float64, upTo int64) bool {

@@ -64,7 +64,7 @@ func (st *Study) Header() string {
 	names := []string{"run"}
 	settings := st.Settings()
 	for i, path := range st.Paths() {
-		names = append(names, settingName(path, &settings[i]))
+		names = append(names, SettingName(path, &settings[i]))
 	}
 	names = append(names, "outcome", "limit", "channel", "ran_s", "pass")
 	for i := range st.columns {

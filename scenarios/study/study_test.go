@@ -246,11 +246,11 @@ func TestUndefinedFiguresAreWorst(t *testing.T) {
 	}
 }
 
-func TestQuoteShell(t *testing.T) {
+func TestQuote(t *testing.T) {
 	for word, want := range map[string]string{
 		"archive": "archive", "a b": "'a b'", "it's": `'it'\''s'`, "": "''", "specimen[0]": "'specimen[0]'", "$(x)": "'$(x)'",
 	} {
-		if got := quoteShell(word); got != want {
+		if got := Quote(word); got != want {
 			t.Errorf("%q: %s", word, got)
 		}
 	}

@@ -135,11 +135,7 @@ func (t *Tally) add(r *Row) {
 // Quantile returns the value that the part q of the runs are no worse than, by
 // size where the sign does not matter; NaN where that is no number.
 func (t *Tally) Quantile(q float64) float64 {
-	v := t.Column.good(t.sketch.quantile(q))
-	if math.IsInf(v, 0) {
-		return math.NaN()
-	}
-	return v
+	return t.Column.Good(t.sketch.quantile(q))
 }
 
 // addPoint sums the runs up by point of the grid.
@@ -176,20 +172,13 @@ func (s *Summary) addPoint(r *Row) {
 func (s *Summary) closePoint(p *Point) {
 	for i, sk := range p.sketches {
 		c := s.Figures[i].Column
-		p.Worst = append(p.Worst, finite(c.good(sk.most)))
-		p.Most = append(p.Most, finite(c.good(sk.quantile(0.95))))
+		p.Worst = append(p.Worst, c.Good(sk.most))
+		p.Most = append(p.Most, c.Good(sk.quantile(0.95)))
 	}
 	p.sketches = nil
 	if len(s.Study.Grid) == 1 {
 		s.span(p)
 	}
-}
-
-func finite(v float64) float64 {
-	if math.IsInf(v, 0) {
-		return math.NaN()
-	}
-	return v
 }
 
 // span lengthens the last span by a point that passes, or begins one.
@@ -224,18 +213,24 @@ func (s *Summary) AtLeast() float64 {
 
 // Command is how run i is made again, by itself.
 func (st *Study) Command(i int64) string {
-	parts := []string{"antelag run", quoteShell(st.Scenario.Name)}
-	for _, set := range st.Sets {
-		parts = append(parts, "--set", quoteShell(set))
-	}
+	sets := slices.Clone(st.Sets)
 	for _, c := range st.Changes(i) {
-		parts = append(parts, "--set", quoteShell(c.Path+"="+c.Value))
+		sets = append(sets, c.Path+"="+c.Value)
+	}
+	return Command("run", st.Scenario.Name, sets)
+}
+
+// Command is a command line on a scenario with some settings changed.
+func Command(verb, scenario string, sets []string) string {
+	parts := []string{"antelag", verb, Quote(scenario)}
+	for _, set := range sets {
+		parts = append(parts, "--set", Quote(set))
 	}
 	return strings.Join(parts, " ")
 }
 
-// quoteShell quotes a word for a shell where it needs it.
-func quoteShell(word string) string {
+// Quote quotes a word for a shell where it needs it.
+func Quote(word string) string {
 	plain := func(r rune) bool {
 		return r >= 'a' && r <= 'z' || r >= 'A' && r <= 'Z' || r >= '0' && r <= '9' || strings.ContainsRune("_-./=:,+@%", r)
 	}

@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"io"
 	"strings"
-	"text/tabwriter"
 	"unicode/utf8"
 
 	"antelag/scenarios/quantity"
@@ -55,20 +54,30 @@ func pad(status string, colour bool) string {
 	return word(status, colour) + strings.Repeat(" ", len("ERROR  ")-len(status))
 }
 
-// table writes rows in columns behind marks, which may hold colour.
+// table writes rows in columns behind marks, which may hold colour. The last
+// cell of a row is as long as it likes.
 func table(out *strings.Builder, indent string, marks []string, rows [][]string) {
-	var text strings.Builder
-	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
+	var widths []int
 	for _, row := range rows {
-		fmt.Fprintln(t, strings.Join(row, "\t"))
-	}
-	t.Flush() //nolint:errcheck // a Builder does not fail
-	for i, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
-		mark := ""
-		if i < len(marks) {
-			mark = marks[i]
+		for i, cell := range row[:len(row)-1] {
+			if i == len(widths) {
+				widths = append(widths, 0)
+			}
+			widths[i] = max(widths[i], utf8.RuneCountInString(cell))
 		}
-		fmt.Fprintf(out, "%s%s%s\n", indent, mark, strings.TrimRight(line, " "))
+	}
+	for i, row := range rows {
+		line := indent
+		if i < len(marks) {
+			line += marks[i]
+		}
+		for k, cell := range row {
+			line += cell
+			if k < len(row)-1 {
+				line += strings.Repeat(" ", widths[k]-utf8.RuneCountInString(cell)+2)
+			}
+		}
+		fmt.Fprintln(out, strings.TrimRight(line, " "))
 	}
 }
 
@@ -152,7 +161,6 @@ func (r *Result) failures(out *strings.Builder, failed []Row, colour bool) {
 		rows = append(rows, []string{what, orDash(f.Was), f.Is, f.Allowed})
 		marks = append(marks, mark)
 	}
-	align(rows)
 	table(out, "  ", marks, rows)
 }
 
@@ -161,17 +169,6 @@ func orDash(s string) string {
 		return "–"
 	}
 	return s
-}
-
-// align gives the first column a width, for the marks stand outside of it.
-func align(rows [][]string) {
-	width := 0
-	for _, r := range rows {
-		width = max(width, utf8.RuneCountInString(r[0]))
-	}
-	for _, r := range rows {
-		r[0] += strings.Repeat(" ", width-utf8.RuneCountInString(r[0]))
-	}
 }
 
 // sum counts, and says what is amiss beside the scenarios themselves.

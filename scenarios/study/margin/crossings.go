@@ -46,43 +46,41 @@ func (a *analyst) delayRange(channel int) (low, high float64) {
 // delays goes from now to longer delays, or, where the loop grows, to shorter ones.
 func (a *analyst) delays(ctx context.Context, channel int, m *Margins) error {
 	low, high := a.delayRange(channel)
-	// A candidate at nothing may be put on either side by rounding.
 	candidates, err := a.base.Delays(channel, low, high)
 	if err != nil {
 		return err
 	}
-	near := 1e-12
-	ahead, direction := beyond(candidates, near, 1), 1.0
+	// A loop on the edge may be found just beyond it, by rounding and by the tick.
+	tick := 1 / a.s.Loop.Num("rate")
+	ahead, direction := beyond(candidates, -1e-3*tick, 1), 1.0
 	if !a.stable {
-		ahead, direction = beyond(candidates, -near, -1), -1
+		ahead, direction = beyond(candidates, 0, -1), -1
 	}
-	stable := a.stable
+	stable, before := a.stable, 0.0
 	for i := 0; i < len(ahead) && len(m.Delays) < mostChanges && i < 64; i++ {
 		if ctx.Err() != nil {
 			return ctx.Err()
 		}
-		limit := high
-		if direction < 0 {
-			limit = low
-		}
-		probe := 0.5 * (ahead[i].Value + limit)
+		probe := ahead[i].Value + direction*max(0.05*math.Abs(ahead[i].Value), 0.02*tick)
 		if i+1 < len(ahead) {
-			probe = 0.5 * (ahead[i].Value + ahead[i+1].Value)
+			if mid := 0.5 * (ahead[i].Value + ahead[i+1].Value); (probe-mid)*direction > 0 {
+				probe = mid
+			}
 		}
-		if step := 0.05 * math.Abs(ahead[i].Value); math.Abs(probe-ahead[i].Value) > step {
-			probe = ahead[i].Value + direction*step
-		}
+		probe = min(high, max(low, probe))
 		now, err := a.stableAt(channel, probe)
 		if err != nil {
 			return err
 		}
 		if now == stable {
+			before = probe
 			continue
 		}
-		at, err := a.refine(channel, ahead[i])
+		at, err := a.refine(channel, ahead[i], before, probe, stable)
 		if err != nil {
 			return err
 		}
+		before = probe
 		if direction < 0 {
 			// Found on the way down: beyond it, upwards, the loop grows.
 			m.DelayMargin = rtloop.Figure(at)
@@ -90,6 +88,7 @@ func (a *analyst) delays(ctx context.Context, channel int, m *Margins) error {
 			return nil
 		}
 		if len(m.Delays) == 0 {
+			at = max(0, at)
 			m.DelayMargin = rtloop.Figure(at)
 		}
 		m.Delays = append(m.Delays, Change{rtloop.Figure(at), rtloop.Figure(a.base.Frequency(ahead[i])), now})
@@ -150,42 +149,78 @@ func (a *analyst) stableAt(channel int, extra float64) (bool, error) {
 	return n == 0, err
 }
 
-// refine finds the delay at which the pole of a crossing is on the unit circle when
-// the actuator is built with it, by secants.
-func (a *analyst) refine(channel int, c stability.Crossing) (float64, error) {
-	off := func(extra float64, guess complex128) (float64, complex128, error) {
+// refine finds the delay, between two others on either side of it, at which the pole
+// of a crossing is on the unit circle when the actuator is built with it: by secants,
+// or, where they lead elsewhere, by halving.
+func (a *analyst) refine(channel int, c stability.Crossing, before, behind float64, stable bool) (float64, error) {
+	x, ok, err := a.secants(channel, c)
+	tolerance := 1e-3 / a.s.Loop.Num("rate")
+	if err != nil || ok && x > min(before, behind)-tolerance && x < max(before, behind)+tolerance {
+		return x, err
+	}
+	// The estimate is as good as halving, which sees growth from Neutral on only.
+	for _, near := range []float64{1e-4, 1e-3} {
+		below, err := a.stableAt(channel, c.Value*(1-near))
+		if err != nil {
+			return 0, err
+		}
+		above, err := a.stableAt(channel, c.Value*(1+near))
+		if err != nil || below != above {
+			return c.Value, err
+		}
+	}
+	for range 40 {
+		mid := 0.5 * (before + behind)
+		now, err := a.stableAt(channel, mid)
+		if err != nil {
+			return 0, err
+		}
+		if now == stable {
+			before = mid
+		} else {
+			behind = mid
+		}
+	}
+	return behind, nil
+}
+
+// secants goes from the estimate to where the pole is on the unit circle; ok is false
+// where that is lost on the way, as of two poles that are one.
+func (a *analyst) secants(channel int, c stability.Crossing) (x float64, ok bool, err error) {
+	guess := cmplx.Rect(1, c.Angle)
+	off := func(extra float64) (float64, bool, error) {
 		m, err := a.delayed(channel, extra)
 		if err != nil {
-			return 0, 0, err
+			return 0, false, err
 		}
 		z, ok := m.Pole(guess)
-		if !ok {
-			return 0, 0, stability.ErrUnsettled
-		}
-		return math.Log(cmplx.Abs(z)), z, nil
+		guess = z
+		return math.Log(cmplx.Abs(z)), ok, nil
 	}
 	x0 := c.Value
-	f0, z, err := off(x0, cmplx.Rect(1, c.Angle))
-	if err != nil || f0 == 0 {
-		return x0, err
+	f0, ok, err := off(x0)
+	if err != nil || !ok || f0 == 0 {
+		return x0, ok, err
 	}
 	x1 := x0 + 1e-4*x0 + 1e-7
-	for range 12 {
-		f1, next, err := off(x1, z)
-		if err != nil {
-			return x0, err
+	last := 0.0
+	for range 20 {
+		f1, ok, err := off(x1)
+		if err != nil || !ok {
+			return 0, false, err
 		}
 		step := f1 * (x1 - x0) / (f1 - f0)
-		if math.IsNaN(step) || math.Abs(x1-step-c.Value) > 0.02*math.Abs(c.Value)+1e-3 {
-			return c.Value, nil // a double pole: the estimate is as good as it gets
+		if math.IsNaN(step) || math.IsInf(step, 0) {
+			return x1, f1 == 0, nil
 		}
-		x0, f0, z = x1, f1, next
+		x0, f0 = x1, f1
 		x1 -= step
-		if math.Abs(step) <= 1e-11*math.Abs(x1)+1e-15 {
+		if last = math.Abs(step); last <= 1e-11*math.Abs(x1)+1e-15 {
 			break
 		}
 	}
-	return x1, nil
+	// Two poles that are one wander by the root of the digits.
+	return x1, last <= 1e-6*math.Abs(x1), nil
 }
 
 // gains goes from 1 up, or, where the loop grows, down.
@@ -194,9 +229,9 @@ func (a *analyst) gains(channel int, m *Margins) error {
 	if err != nil {
 		return err
 	}
-	ahead, direction := beyond(candidates, 1+1e-12, 1), 1.0
+	ahead, direction := beyond(candidates, 1-1e-6, 1), 1.0
 	if !a.stable {
-		ahead, direction = beyond(candidates, 1-1e-12, -1), -1
+		ahead, direction = beyond(candidates, 1, -1), -1
 	}
 	stable := a.stable
 	for i := 0; i < len(ahead) && len(m.Gains) < mostChanges; i++ {
@@ -215,6 +250,9 @@ func (a *analyst) gains(channel int, m *Margins) error {
 			continue
 		}
 		at := rtloop.Figure(ahead[i].Value)
+		if direction > 0 {
+			at = max(1, at)
+		}
 		if len(m.Gains) == 0 {
 			m.GainMargin = at
 		}

@@ -28,7 +28,7 @@ type Options struct {
 	Log runlog.Options
 	// Window is the length of the windows over time, s of the log; 0: that of the
 	// energy margin where the log says where it comes from, else 5 s, but no more
-	// than an eighth of the record.
+	// than an eighth of the record, and about, for speed.
 	Window float64
 	// Slowdown is how many physical seconds a second of the log took; 0: what the
 	// log's provenance says, else 1. Delays are physical seconds.
@@ -55,6 +55,8 @@ type Replay struct {
 	window     int     // samples
 	channels   []*channel
 	notes      []string
+	taken      int // samples of the reader's block
+	stretch    Stretch
 
 	marginLeast, marginLast float64
 	marginAt                int64
@@ -132,7 +134,7 @@ func (p *Replay) belongs(s *scenarios.Scenario) bool {
 		names[n] = true
 	}
 	for _, c := range p.reader.Channels() {
-		if !names[c.Name] {
+		if !names[c.Name] && c.Name != runlog.Unnamed { // a map may leave the name out
 			return false
 		}
 	}
@@ -159,7 +161,24 @@ func (p *Replay) chooseWindow(step float64) error {
 		}
 	}
 	p.window = max(2*int(math.Round(min(window/step, 1<<20)/2)), shortestTicks)
+	if p.options.Window == 0 {
+		p.window = quick(p.window)
+	}
 	return nil
+}
+
+// quick returns the length nearest to n whose Fourier transform takes least time:
+// 4, 5 or 6 times a power of two.
+func quick(n int) int {
+	best := 4
+	for unit := 1; unit*4 <= 2*n; unit *= 2 {
+		for times := 4; times <= 6; times++ {
+			if length := unit * times; max(length-n, n-length) < max(best-n, n-best) {
+				best = length
+			}
+		}
+	}
+	return best
 }
 
 // energyWindow is the window of the energy margin of the test that was logged, s;
@@ -175,26 +194,63 @@ func (p *Replay) energyWindow() float64 {
 	return l.Window()
 }
 
-// Next takes the next block of the record through the gauges and reports whether
-// there was one.
-func (p *Replay) Next() bool {
-	if !p.reader.Next() {
-		return false
-	}
-	b := p.reader.Block()
-	for j, c := range p.channels {
-		c.add(b.First, &b.Channels[j], b.Margin)
-	}
-	for k, m := range b.Margin {
-		if p.marginLast = m; m < p.marginLeast {
-			p.marginLeast, p.marginAt = m, b.First+int64(k)
-		}
-	}
-	return true
+// Stretch is a stretch of the record: the samples of every channel, views that the
+// next one overwrites, and the margin as it was logged, nil if it was not.
+type Stretch struct {
+	First    int64
+	N        int
+	Channels []runlog.Samples
+	Margin   []float64
 }
 
-// Block is what Next took, for those who show it.
-func (p *Replay) Block() *runlog.Block { return p.reader.Block() }
+// Advance takes up to n samples more through the gauges and returns them; ok is
+// false at the end of the record, or where it cannot be read on. It may return
+// fewer than n.
+func (p *Replay) Advance(n int) (s *Stretch, ok bool) {
+	b := p.reader.Block()
+	if p.taken == b.N {
+		if !p.reader.Next() {
+			return nil, false
+		}
+		p.taken = 0
+	}
+	from, to := p.taken, min(p.taken+n, b.N)
+	p.taken = to
+	s = &p.stretch
+	s.First, s.N = b.First+int64(from), to-from
+	if s.Channels == nil {
+		s.Channels = make([]runlog.Samples, len(p.channels))
+	}
+	for j, c := range p.channels {
+		for role, v := range b.Channels[j] {
+			if v != nil {
+				s.Channels[j][role] = v[from:to]
+			}
+		}
+		if b.Margin != nil {
+			s.Margin = b.Margin[from:to]
+		}
+		c.add(s.First, &s.Channels[j], s.Margin)
+	}
+	for k, m := range s.Margin {
+		if p.marginLast = m; m < p.marginLeast {
+			p.marginLeast, p.marginAt = m, s.First+int64(k)
+		}
+	}
+	return s, true
+}
+
+// Rewind goes back to the beginning of the record, with gauges that have seen
+// nothing.
+func (p *Replay) Rewind() error {
+	again, err := Open(p.path, p.options)
+	if err != nil {
+		return err
+	}
+	p.Close() //nolint:errcheck // it was only read
+	*p = *again
+	return nil
+}
 
 // Err returns the error that ended the record, nil at its end.
 func (p *Replay) Err() error { return p.reader.Err() }
@@ -238,7 +294,8 @@ func Of(ctx context.Context, path string, o Options) (*Report, error) {
 			o.Progress(pass*size+p.reader.Offset(), passes*size)
 		}
 	}
-	for ctx.Err() == nil && p.Next() {
+	for more := true; more && ctx.Err() == nil; {
+		_, more = p.Advance(math.MaxInt32)
 		told(0)
 	}
 	if err := p.Err(); err != nil {
@@ -256,13 +313,13 @@ func Of(ctx context.Context, path string, o Options) (*Report, error) {
 	return rep, err
 }
 
-// Report gathers the figures of what has been read.
+// Report gathers the figures of what has been taken through the gauges.
 func (p *Replay) Report() *Report {
-	n := p.reader.Samples()
+	n := p.stretch.First + int64(p.stretch.N)
 	rep := &Report{
 		Log: p.path, Rate: 1 / p.tick, Slowdown: p.slowdown, Start: rtloop.Figure(p.reader.Start()),
 		Time: rtloop.Figure(float64(max(n-1, 0)) * p.reader.Step()), Samples: n, Window: float64(p.window) * p.reader.Step(),
-		Notes: append(p.reader.Notes(), p.notes...), Energy: p.energy(),
+		Notes: append(append([]string{}, p.reader.Notes()...), p.notes...), Energy: p.energy(),
 	}
 	if p.provenance != nil {
 		rep.Title = p.provenance.Title

@@ -112,10 +112,10 @@ func (r *Report) response(b *strings.Builder) {
 func (r *Report) work(b *strings.Builder) {
 	e := r.Energy
 	if e.Injected.Defined() {
-		way := "put into the structure by"
+		way := "put in by"
 		v := float64(e.Injected)
 		if v < 0 {
-			way = "taken out of the structure by"
+			way = "taken out by"
 		}
 		fmt.Fprintf(b, "\n  energy  %s %s the tracking error; the specimens took %s\n", quantity.Format(math.Abs(v), quantity.Energy), way, quantity.Format(float64(e.Specimen), quantity.Energy))
 	} else {

@@ -159,16 +159,16 @@ func (w *windows) keep(one Window) {
 	w.done, w.thin = half, 2*w.thin
 }
 
-// all returns all windows of a record that ended, and with them what is left over
-// of the last one, if that is half a window or all there is. peak is the peak
-// target.
+// all returns all windows of a record that ended, and with them what has been
+// begun and goes beyond the last, so that none of the record is left out. peak is
+// the peak target.
 func (w *windows) all(peak float64, at func(int64) float64) []Window {
 	out := append([]Window(nil), w.done...)
 	older := &w.spans[0]
 	if b := &w.spans[1]; b.n > older.n {
 		older = b
 	}
-	if older.n > w.length/2 || len(out) == 0 && older.n > 1 {
+	if older.n > w.length/2+1 || len(out) == 0 && older.n > 1 {
 		out = append(out, older.finish(w.tick))
 	}
 	for i := range out {
