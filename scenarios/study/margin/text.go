@@ -136,6 +136,9 @@ func (r *Report) margin(w io.Writer, name string, m *Margins, critical string) {
 func (r *Report) further(b *bytes.Buffer) {
 	if !r.Stable {
 		b.WriteString("The loop grows as it is: delays below nothing and gains below 1 say how much\nquicker the actuator, or weaker the force, would have to be.\n")
+		if len(r.Notes) > 0 {
+			b.WriteString("Parts that yield may keep it from growing far.\n")
+		}
 	}
 	say := func(name string, m *Margins) {
 		if len(m.Delays) > 1 {
