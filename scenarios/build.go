@@ -261,13 +261,19 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 	if b.structure == nil {
 		return nil, nil
 	}
+	return b.perfectLoop(b.step(), 1)
+}
+
+// perfectLoop builds a loop of perfect channels, without gauges, of so many
+// physical seconds a tick at a slowdown.
+func (b *builder) perfectLoop(tick, slowdown float64) (*rtloop.Loop, error) {
 	var channels []rtloop.Channel
 	for i := range b.s.Channels {
 		specimen, err := b.specimen(i)
 		if err != nil {
 			return nil, err
 		}
-		c, err := perfect(b.step(), b.tick())
+		c, err := perfect(tick, b.tick())
 		if err != nil {
 			return nil, err
 		}
@@ -275,7 +281,7 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 		channels = append(channels, c)
 	}
 	cfg := b.config(channels)
-	cfg.Tick, cfg.Slowdown, cfg.Judge, cfg.Memory = b.step(), 1, false, 0
+	cfg.Tick, cfg.Slowdown, cfg.Judge, cfg.Memory = tick, slowdown, false, 0
 	return b.loop(cfg)
 }
 
@@ -326,25 +332,31 @@ func buildPart[B any](table *kind.Table[B], name string, given kind.Values) (fou
 func (b *builder) lane(i int) (*rtloop.Loop, error) {
 	var channels []rtloop.Channel
 	for j := range b.s.Channels {
-		part, path := b.s.Channels[j].Compensator, "channel["+strconv.Itoa(j)+"].compensator"
-		if i >= 0 && (b.s.Lanes[i].Channel == "" || b.s.Lanes[i].Channel == b.s.Channels[j].Name) {
-			part, path = b.s.Lanes[i].Compensator, "lane["+strconv.Itoa(i)+"].compensator"
-		}
-		c, err := b.channel(j)
+		c, err := b.compensated(i, j)
 		if err != nil {
 			return nil, err
-		}
-		c.Method = part.Kind.Name
-		comp, err := buildPart(&compensator.Kinds, part.Kind.Name, part.Values)
-		if err == nil {
-			c.Compensator, err = comp.New(b.tick(), comp.values)
-		}
-		if err != nil {
-			return nil, b.s.doc.settingError(path, part.Kind, err)
 		}
 		channels = append(channels, c)
 	}
 	return b.loop(b.config(channels))
+}
+
+// compensated builds channel j with the compensator that lane i has there.
+func (b *builder) compensated(i, j int) (rtloop.Channel, error) {
+	part, path := b.s.Channels[j].Compensator, "channel["+strconv.Itoa(j)+"].compensator"
+	if i >= 0 && (b.s.Lanes[i].Channel == "" || b.s.Lanes[i].Channel == b.s.Channels[j].Name) {
+		part, path = b.s.Lanes[i].Compensator, "lane["+strconv.Itoa(i)+"].compensator"
+	}
+	c, err := b.channel(j)
+	if err != nil {
+		return c, err
+	}
+	c.Method = part.Kind.Name
+	comp, err := buildPart(&compensator.Kinds, part.Kind.Name, part.Values)
+	if err == nil {
+		c.Compensator, err = comp.New(b.tick(), comp.values)
+	}
+	return c, b.s.doc.settingError(path, part.Kind, err)
 }
 
 // channel builds all of channel j but its compensator.

@@ -14,7 +14,7 @@ import (
 // for a day than for a minute; to seek back it opens the log anew.
 type player struct {
 	path string
-	opts runlog.Options
+	opts PlayOptions
 
 	reader *runlog.Reader
 	names  []string // channels
@@ -49,16 +49,16 @@ type player struct {
 const (
 	playWindow    = 2.0 // s
 	historyEvery  = 0.1 // s
-	fastestPlay   = 64
-	slowestPlay   = 1.0 / 64
+	FastestPlay   = 64
+	SlowestPlay   = 1.0 / 64
 	seekBudget    = 40 * time.Millisecond // of a frame, to read on
 	checkSamples  = 1024
 	rulerSamples  = 2 // the fewest that a gauge can take
 	longestWindow = 1 << 20
 )
 
-func newPlayer(path string, o runlog.Options) (*player, error) {
-	p := &player{path: path, opts: o, speed: 1}
+func newPlayer(path string, o PlayOptions) (*player, error) {
+	p := &player{path: path, opts: o, speed: o.Speed}
 	if err := p.open(); err != nil {
 		return nil, err
 	}
@@ -73,7 +73,7 @@ func newPlayer(path string, o runlog.Options) (*player, error) {
 }
 
 func (p *player) open() error {
-	r, err := runlog.Open(p.path, p.opts)
+	r, err := runlog.Open(p.path, p.opts.Log)
 	if err != nil {
 		return err
 	}
@@ -122,6 +122,9 @@ func (p *player) start() float64 {
 	return p.reader.Start()
 }
 
+// tick is the physical time from one sample to the next, s.
+func (p *player) tick() float64 { return p.step * p.opts.Slowdown }
+
 // now is the instant that has been reached, or is sought, s.
 func (p *player) now() float64 { return p.start() + float64(p.goal)*p.step }
 
@@ -134,7 +137,7 @@ func (p *player) seeking() bool {
 // changed.
 func (p *player) advance(passed time.Duration) (bool, error) {
 	if !p.paused && !p.ended && !p.seeking() {
-		p.part += passed.Seconds() * p.speed / p.step
+		p.part += passed.Seconds() * p.speed / p.tick()
 		whole := math.Floor(p.part)
 		p.part -= whole
 		p.goal += int64(whole)
@@ -218,7 +221,7 @@ func (p *player) delayNow() float64 {
 	if p.judged < rulerSamples || p.tracking.AtRestFor(p.peak) {
 		return math.NaN()
 	}
-	return p.tracking.Subspace().Delay * p.step
+	return p.tracking.Subspace().Delay * p.tick()
 }
 
 func (p *player) setSpeed(factor float64) {
@@ -226,7 +229,7 @@ func (p *player) setSpeed(factor float64) {
 	if factor == 0 {
 		speed = 1
 	}
-	if speed > fastestPlay || speed < slowestPlay {
+	if speed > FastestPlay || speed < SlowestPlay {
 		p.message = map[bool]string{true: "no faster than this", false: "no slower than this"}[factor > 1]
 		return
 	}
@@ -266,7 +269,7 @@ func (p *player) snapshot() *Snapshot {
 	nan := math.NaN()
 	s := &Snapshot{
 		Scenario: p.path, Title: "recorded test", Channels: p.names, Channel: p.channel,
-		Clock: Clock{Time: p.now(), Duration: nan, Rate: 1 / p.step, Slowdown: 1, Speed: p.speed, Paused: p.paused, Ended: p.ended},
+		Clock: Clock{Time: p.now(), Duration: nan, Rate: 1 / p.tick(), Slowdown: p.opts.Slowdown, Speed: p.speed, Paused: p.paused, Ended: p.ended},
 		Trace: Trace{Time: newest(p.trail.time, p.trail.keep), Target: newest(p.trail.target, p.trail.keep),
 			Command: newest(p.trail.command, p.trail.keep), Measured: newest(p.trail.measured, p.trail.keep),
 			Lag: newest(p.trail.lag, p.trail.keep), ErrorLimit: math.Inf(1)},

@@ -23,7 +23,7 @@ type Moment struct {
 
 // Play plays a log through the dashboard's panels until it is quit or ctx ends.
 // It leaves the terminal as Run does, and its errors are like those of Run.
-func Play(ctx context.Context, path string, o runlog.Options, all Overview) error {
+func Play(ctx context.Context, path string, o PlayOptions, all Overview) error {
 	screen, err := tcell.NewScreen()
 	if err != nil {
 		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
@@ -31,7 +31,14 @@ func Play(ctx context.Context, path string, o runlog.Options, all Overview) erro
 	return play(ctx, path, o, all, screen)
 }
 
-func play(ctx context.Context, path string, o runlog.Options, all Overview, term terminal) error {
+// PlayOptions are how a log is read and played.
+type PlayOptions struct {
+	Log      runlog.Options
+	Slowdown float64 // physical seconds that a second of the log took, > 0
+	Speed    float64 // of the play, times the real one, > 0
+}
+
+func play(ctx context.Context, path string, o PlayOptions, all Overview, term terminal) error {
 	p, err := newPlayer(path, o)
 	if err != nil {
 		return err

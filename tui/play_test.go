@@ -12,8 +12,6 @@ import (
 	"time"
 
 	"github.com/gdamore/tcell/v2"
-
-	"antelag/rtloop/runlog"
 )
 
 // recorded writes an invented log of two channels at 256 Hz: each follows a
@@ -36,7 +34,7 @@ func recorded(t *testing.T, seconds float64) string {
 
 func played(t *testing.T, path string) *player {
 	t.Helper()
-	p, err := newPlayer(path, runlog.Options{Need: []runlog.Role{runlog.Target, runlog.Measured}})
+	p, err := newPlayer(path, PlayOptions{Slowdown: 1, Speed: 1})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -132,7 +130,7 @@ func TestPlayOnATerminal(t *testing.T) {
 	path := recorded(t, 20)
 	done := make(chan error, 1)
 	go func() {
-		done <- play(context.Background(), path, runlog.Options{}, func(context.Context) (float64, []Moment, error) {
+		done <- play(context.Background(), path, PlayOptions{Slowdown: 1, Speed: 1}, func(context.Context) (float64, []Moment, error) {
 			return 19.996, []Moment{{12.5, "late by 16 ms"}}, nil
 		}, sim)
 	}()
@@ -159,4 +157,43 @@ func TestPlayOnATerminal(t *testing.T) {
 	if sim.ended != 1 {
 		t.Errorf("the terminal was given back %d times", sim.ended)
 	}
+}
+
+// Every key that the help names is a key.
+func TestHelpNamesRealKeys(t *testing.T) {
+	const none = "no key"
+	single := func(keys []keyHelp, press func(r rune) (message string)) {
+		for _, k := range keys {
+			for _, name := range strings.Fields(k.key) {
+				r := []rune(name)
+				if len(r) != 1 || r[0] > '~' {
+					continue // named, like Enter, or an arrow
+				}
+				if m := press(r[0]); strings.HasPrefix(m, none) {
+					t.Errorf("%s, %s: %s", name, k.long, m)
+				}
+			}
+		}
+	}
+	sim := tcell.NewSimulationScreen("UTF-8")
+	if err := sim.Init(); err != nil {
+		t.Fatal(err)
+	}
+	defer sim.Fini()
+	t.Chdir(t.TempDir())
+	a := newApp(liveSession(t), sim)
+	single(keys, func(r rune) string {
+		a.session.message, a.session.prompt = "", nil
+		a.rune(r)
+		return a.session.message
+	})
+	if a.rune('%'); !strings.HasPrefix(a.session.message, none) {
+		t.Error("% is a key")
+	}
+	p := &playApp{player: played(t, recorded(t, 3)), desk: newDesk(sim)}
+	single(playKeys, func(r rune) string {
+		p.player.message = ""
+		p.rune(r)
+		return p.player.message
+	})
 }

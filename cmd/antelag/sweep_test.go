@@ -264,11 +264,11 @@ type sweepJSON struct {
 		Quantiles map[string]*float64 `json:"quantiles"`
 	} `json:"figures"`
 	Points []struct {
-		Values []float64 `json:"values"`
-		Runs   int64     `json:"runs"`
-		Passed int64     `json:"passed"`
-		Worst  *float64  `json:"worst"`
-		Most   *float64  `json:"q95"`
+		Values []float64           `json:"values"`
+		Runs   int64               `json:"runs"`
+		Passed int64               `json:"passed"`
+		Worst  map[string]*float64 `json:"worst"`
+		Most   map[string]*float64 `json:"q95"`
 	} `json:"points"`
 	Spans   [][2]float64 `json:"all_pass"`
 	Compute struct {

@@ -25,6 +25,10 @@ func (r *Reader) sayLayout() {
 	if n := r.layout.skipped; n > 0 {
 		r.note("%s before line %d %s no part of the table and %s skipped", lines(n), r.layout.first, isAre(n), wasWere(n))
 	}
+	const slow = 0.1 // s from row to row, that no test is logged at
+	if !r.grid.counted && r.grid.step >= slow {
+		r.note("rows come every %s; if the time column counts rows, or is in another unit, say it by --rate or --units time=ms", ms(r.grid.step))
+	}
 	if r.grid.counted {
 		for i, h := range r.layout.names {
 			if name, _, _ := namedUnit(h, quantity.Time); strings.EqualFold(name, "time") {

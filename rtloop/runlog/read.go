@@ -59,8 +59,10 @@ type Reader struct {
 	tail  badTail
 	block Block
 	err   error
-	ended bool
-	notes []string
+
+	expected int64
+	ended    bool
+	notes    []string
 }
 
 // Block is a stretch of a log: evenly spaced samples in SI. Its slices are
@@ -93,7 +95,11 @@ func Open(path string, o Options) (*Reader, error) {
 	if err != nil {
 		return nil, err
 	}
-	r := &Reader{path: path, source: s, buf: make([]byte, readSize)}
+	size := int64(readSize)
+	if s.size > 0 && !s.packed {
+		size = min(size, s.size+1) // the byte more shows the end
+	}
+	r := &Reader{path: path, source: s, buf: make([]byte, size)}
 	if err := r.open(&o); err != nil {
 		s.Close()
 		return nil, err
@@ -125,6 +131,10 @@ func (r *Reader) open(o *Options) error {
 	r.prepare()
 	if err := r.findSampling(o); err != nil {
 		return err
+	}
+	rows := r.buf[r.pos:r.end]
+	if lines := bytes.Count(rows, []byte{r.layout.end}); lines > 0 && r.source.size > 0 && !r.source.packed {
+		r.expected = int64(float64(lines) / float64(len(rows)) * float64(max(r.source.size-int64(r.layout.at), 0)))
 	}
 	r.sayLayout()
 	return nil
@@ -211,6 +221,10 @@ func (r *Reader) HasMargin() bool { return r.chosen.margin >= 0 }
 
 // Size returns the bytes of the log where they are known beforehand, else 0.
 func (r *Reader) Size() int64 { return r.source.size }
+
+// Expected returns about how many samples there will be, as the first lines and the
+// size of the file have it; 0 where they do not.
+func (r *Reader) Expected() int64 { return r.expected }
 
 // Offset returns about how many bytes of the file have been read.
 func (r *Reader) Offset() int64 { return r.source.read }

@@ -117,6 +117,14 @@ func TestMapsAndUnitsThatAreRefused(t *testing.T) {
 	}
 }
 
+// A column of row numbers is no time in seconds; that may be so, but it is said.
+func TestRowNumbersForTimes(t *testing.T) {
+	w, err := readWhole(lab(t, "time,target [m]\n1,0\n2,1\n3,2\n"), Options{})
+	if err != nil || !strings.Contains(w.notes, "rows come every 1 s; if the time column counts rows") {
+		t.Errorf("%v, %q", err, w.notes)
+	}
+}
+
 // Where rows are spaced evenly and only their stamps are rounded, samples are the
 // rows themselves at the true rate. Stamps of a millisecond at 2048 Hz, rounded or
 // cut off, and twenty rows to a stamp of a hundredth of a second.
@@ -242,11 +250,12 @@ func TestHolesAreBridgedAcrossBlocks(t *testing.T) {
 
 // A log behind whose middle a column has no number any more ends there.
 func TestAColumnThatEnds(t *testing.T) {
-	text := table(headed, format, 20000)
-	for i := 15000; i < 20000; i++ {
-		text = strings.Replace(text, fmt.Sprintf(",%d,%g,", i, float64(i)-0.5), fmt.Sprintf(",%d,,", i), 1)
+	var b strings.Builder
+	b.WriteString(table(headed, format, 15000))
+	for k := 15000; k < 20000; k++ {
+		fmt.Fprintf(&b, "%.3f,%d,,%d\n", float64(k)/1000, k, 2*k)
 	}
-	w, err := readWhole(lab(t, text), Options{})
+	w, err := readWhole(lab(t, b.String()), Options{})
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -29,3 +29,11 @@ func Within(f rtloop.Figure, dim quantity.Dim, limit *kind.Value) string {
 
 // SameUnit writes energies in one unit, so that they can be added up.
 func SameUnit(terms ...rtloop.Figure) []string { return sameUnit(terms...) }
+
+// NewJudgement is a figure of a limit that was found elsewhere, without a
+// verdict, to be written in the same words; NaN is undefined.
+func NewJudgement(limit string, got float64) Judgement {
+	j := measure(rtloop.LaneResult{}, limit)
+	j.Got = rtloop.Figure(got)
+	return j
+}

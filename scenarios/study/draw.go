@@ -77,6 +77,16 @@ func (st *Study) draw(dst []float64, i int64) []float64 {
 	return dst
 }
 
+// LatinPoint is point i of n of a Latin hypercube that fills the unit cube.
+func LatinPoint(seed, i, n int64, dims int) []float64 {
+	out := make([]float64, dims)
+	for k := range out {
+		u := unit(uint64(seed), uint64(k), uint64(i), 'p')
+		out[k] = (float64(shuffle(uint64(i), uint64(n), mix(uint64(seed), uint64(k), 'l'))) + u) / float64(n)
+	}
+	return out
+}
+
 // quantile returns the value below which the part u, above 0 and below 1, of the
 // law lies.
 func (l Law) quantile(low, high, u float64) float64 {

@@ -24,11 +24,11 @@ func (s *Summary) MarshalJSON() ([]byte, error) {
 	}
 	for i := range st.Grid {
 		a := &st.Grid[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(a.Path, &a.Setting), a.Low, a.High, a.N, a.Log, false})
+		out.Settings = append(out.Settings, settingJSON{SettingName(a.Path, &a.Setting), a.Low, a.High, a.N, a.Log, false})
 	}
 	for i := range st.Spread {
 		sp := &st.Spread[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(sp.Path, &sp.Setting), sp.Low, sp.High, 0, false, true})
+		out.Settings = append(out.Settings, settingJSON{SettingName(sp.Path, &sp.Setting), sp.Low, sp.High, 0, false, true})
 	}
 	for i := range s.Figures {
 		t := &s.Figures[i]
@@ -39,9 +39,15 @@ func (s *Summary) MarshalJSON() ([]byte, error) {
 		})
 	}
 	for _, p := range s.Points {
-		if p.sketch == nil {
-			out.Points = append(out.Points, pointJSON{p.Values, p.Runs, p.Passed, rtloop.Figure(p.Worst), rtloop.Figure(p.Most)})
+		if p.Worst == nil { // not all its draws are there
+			continue
 		}
+		j := pointJSON{Values: p.Values, Runs: p.Runs, Passed: p.Passed, Worst: map[string]rtloop.Figure{}, Most: map[string]rtloop.Figure{}}
+		for i := range s.Figures {
+			name := s.Figures[i].Column.Name()
+			j.Worst[name], j.Most[name] = rtloop.Figure(p.Worst[i]), rtloop.Figure(p.Most[i])
+		}
+		out.Points = append(out.Points, j)
 	}
 	for _, sp := range s.Spans {
 		out.Spans = append(out.Spans, [2]float64{sp.Low, sp.High})
@@ -97,11 +103,11 @@ type extremeJSON struct {
 }
 
 type pointJSON struct {
-	Values []float64     `json:"values"`
-	Runs   int64         `json:"runs"`
-	Passed int64         `json:"passed"`
-	Worst  rtloop.Figure `json:"worst"`
-	Most   rtloop.Figure `json:"q95"`
+	Values []float64                `json:"values"`
+	Runs   int64                    `json:"runs"`
+	Passed int64                    `json:"passed"`
+	Worst  map[string]rtloop.Figure `json:"worst"`
+	Most   map[string]rtloop.Figure `json:"q95"`
 }
 
 func (st *Study) extremeJSON(e *Extreme) extremeJSON {

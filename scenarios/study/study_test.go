@@ -75,7 +75,7 @@ func TestRowsAreThoseOfSingleRuns(t *testing.T) {
 			if lane != scenarios.Configured {
 				l = &v.Lanes[1]
 			}
-			alone := st.row(int64(i), l)
+			alone := st.row(int64(i), &Judged{Lane: *l})
 			if table(st, []Row{alone}) != table(st, []Row{r}) {
 				t.Fatalf("lane %s, run %d\nin the study %v\nalone        %v", lane, i, r, alone)
 			}
@@ -246,11 +246,11 @@ func TestUndefinedFiguresAreWorst(t *testing.T) {
 	}
 }
 
-func TestQuoteShell(t *testing.T) {
+func TestQuote(t *testing.T) {
 	for word, want := range map[string]string{
 		"archive": "archive", "a b": "'a b'", "it's": `'it'\''s'`, "": "''", "specimen[0]": "'specimen[0]'", "$(x)": "'$(x)'",
 	} {
-		if got := quoteShell(word); got != want {
+		if got := Quote(word); got != want {
 			t.Errorf("%q: %s", word, got)
 		}
 	}

@@ -99,13 +99,13 @@ func TestFilesInTheWay(t *testing.T) {
 				t.Fatal(err)
 			}
 		}, "exists, and there is no"},
-		{"other header", good, spoil("nrmse", "nrsme"), "x.csv:1: is not the header of this study"},
+		{"other header", good, spoil("nrmse", "nrsme"), "x.csv:1: is not the header that belongs here"},
 		{"other number", good, spoil("\n2,", "\n2,1"), "x.csv:4: is not run 2 of this study"},
 		{"cell that is no number", good, spoil(",completed,,,1,", ",completed,,,one,"), `x.csv:2: "one" is no number`},
 		{"cell too few", good, spoil(",completed,,,1,", ",completed,,1,"), "x.csv:2: has "},
 		{"neither true nor false", good, spoil(",true,", ",yes,"), `"yes" is neither true nor false`},
 		{"row too many", good, func(t *testing.T, path string) { write(t, path, read(t, path)+"4,\n") }, "x.csv:6: comes after the last run"},
-		{"binary", good, func(t *testing.T, path string) { write(t, path, "\x00\xff\n") }, "x.csv:1: is not the header"},
+		{"binary", good, func(t *testing.T, path string) { write(t, path, "\x00\xff\n") }, "x.csv:1: is not the header that belongs here"},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			path := tabled(t, in(t, "x.csv"), good, Shard{})
@@ -121,7 +121,7 @@ func TestFilesInTheWay(t *testing.T) {
 			if read(t, path) != before {
 				t.Error("the file was changed")
 			}
-			table, err := OpenTable(path, c.st, Shard{}, "test", true, func(Row) {})
+			table, err := OpenTable(path, c.st, Shard{}, "test", true, func(r Row) { t.Errorf("row %d was handed over", r.Run) })
 			if err != nil {
 				t.Fatal(err)
 			}
@@ -203,13 +203,13 @@ func FuzzTable(f *testing.F) {
 	f.Add(whole[:len(whole)-5])
 	f.Add(strings.Replace(whole, "true", "false", 1))
 	f.Fuzz(func(t *testing.T, text string) {
-		table := &Table{study: st, path: "x.csv", last: 3}
 		rows := 0
-		whole, err := table.read(strings.NewReader(text), func(r Row) {
+		table := newRows(st, Shard{}, func(r Row) {
 			if rows++; r.Run != int64(rows-1) || len(r.Figures) != len(st.Columns()) {
 				t.Fatalf("row %v", r)
 			}
 		})
+		whole, err := table.read("x.csv", strings.NewReader(text))
 		if err == nil && (whole > int64(len(text)) || whole > 0 && text[whole-1] != '\n' || int(table.next) != rows) {
 			t.Errorf("%d bytes are whole, %d rows", whole, rows)
 		}

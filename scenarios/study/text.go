@@ -146,7 +146,7 @@ func (s *Summary) figures(b *strings.Builder, colour bool) {
 	var marks []string
 	for i := range s.Figures {
 		t := &s.Figures[i]
-		row := []string{t.Column.Label, t.Column.extreme(&t.Worst), t.Column.size(t.Quantile(0.95)), t.Column.size(t.Quantile(0.5)), t.Column.extreme(&t.Best)}
+		row := []string{t.Column.Label, t.Column.extreme(&t.Worst), t.Column.Size(t.Quantile(0.95)), t.Column.Size(t.Quantile(0.5)), t.Column.extreme(&t.Best)}
 		mark := "    "
 		if !math.IsNaN(t.Limit) {
 			j := accept.Judgement{Limit: t.Column.Figure, Want: t.Limit, Dim: t.Column.Dim}
@@ -155,7 +155,7 @@ func (s *Summary) figures(b *strings.Builder, colour bool) {
 		}
 		rows, marks = append(rows, row), append(marks, mark)
 	}
-	writeTable(b, rows, marks)
+	WriteTable(b, rows, marks)
 }
 
 // extreme writes the figure of one run, or why it has none.
@@ -166,8 +166,8 @@ func (c *Column) extreme(e *Extreme) string {
 	return c.Format(e.Value)
 }
 
-// size writes a quantile, whose sign is not known where it does not matter.
-func (c *Column) size(v float64) string {
+// Size writes a value whose sign is not known, as of a quantile.
+func (c *Column) Size(v float64) string {
 	if c.Figure == "delay" {
 		return quantity.Format(v, c.Dim)
 	}
@@ -189,7 +189,7 @@ func (s *Summary) varied(b *strings.Builder) {
 		sp := &st.Spread[i]
 		rows = append(rows, []string{sp.Path, sp.Setting.Format(sp.Low), sp.Setting.Format(sp.High), "drawn"})
 	}
-	writeTable(b, rows, nil)
+	WriteTable(b, rows, nil)
 }
 
 // tellPoints is how many points of a grid are told on a screen.
@@ -210,20 +210,20 @@ func (s *Summary) points(b *strings.Builder) {
 	}
 	rows := [][]string{head}
 	for _, p := range s.Points {
-		if p.sketch != nil {
+		if p.Worst == nil {
 			break // not all its draws are there
 		}
 		var row []string
 		for i, v := range p.Values {
 			row = append(row, st.Grid[i].Setting.Format(v))
 		}
-		row = append(row, fmt.Sprintf("%d of %d", p.Passed, p.Runs), main.Column.Format(p.Worst))
+		row = append(row, fmt.Sprintf("%d of %d", p.Passed, p.Runs), main.Column.Format(p.Worst[s.main()]))
 		if st.Draws > 0 {
-			row = append(row, main.Column.size(p.Most))
+			row = append(row, main.Column.Size(p.Most[s.main()]))
 		}
 		rows = append(rows, row)
 	}
-	writeTable(b, rows, nil)
+	WriteTable(b, rows, nil)
 }
 
 // worst names the runs in which the figures that count were worst, and how to
@@ -254,9 +254,9 @@ func (s *Summary) worst(b *strings.Builder) {
 	}
 }
 
-// writeTable writes a blank line and rows in columns, the headings first, with a
+// WriteTable writes a blank line and rows in columns, the headings first, with a
 // mark before each row but the headings.
-func writeTable(b *strings.Builder, rows [][]string, marks []string) {
+func WriteTable(b *strings.Builder, rows [][]string, marks []string) {
 	var text strings.Builder
 	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
 	for _, row := range rows {

@@ -16,7 +16,7 @@ import (
 // run: fused multiply-adds, other mathematical functions, another order of a
 // sum change the last bit of a number, and the loop, the adaptive methods and
 // the quanta of sensors make that grow. Measured over every embedded scenario
-// it stays a factor 30 and more below the tolerance. Above it is what a
+// it stays a factor 25 and more below the tolerance. Above it is what a
 // setting does that was changed by a thousandth of itself.
 type figure[T any] struct {
 	name, label string

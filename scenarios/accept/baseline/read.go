@@ -52,8 +52,11 @@ func read(tree *scenarios.Tree) (*Baseline, error) {
 	r.known(root, "", "format", "version", "lane", "settings")
 	r.format(root)
 	b.Version = r.text(root, "version", "version")
-	for _, name := range sorted(r.table(root, "lane", "lane")) {
-		lanes := r.table(root, "lane", "lane")
+	lanes := r.table(root, "lane", "lane")
+	if len(lanes) == 0 {
+		r.failf("lane", "has no lanes")
+	}
+	for _, name := range sorted(lanes) {
 		r.lane(b, name, r.table(lanes, name, join("lane", name)))
 	}
 	settings := r.table(root, "settings", "settings")

@@ -141,7 +141,9 @@ func (f *finder) file(p string, beside []string) error {
 		return nil
 	}
 	if tree, err := scenarios.ReadTree(p); err == nil && !looksLike(tree.Root()) {
-		f.LeftOut = append(f.LeftOut, p)
+		if !slices.Contains(f.LeftOut, p) {
+			f.LeftOut = append(f.LeftOut, p)
+		}
 		return nil
 	}
 	if t := f.load(p); t != nil && t.Err != nil && f.Strict {

@@ -9,8 +9,8 @@ import (
 )
 
 // The form of test results that build servers read: a suite for each scenario,
-// a case for its run, for each acceptance limit and for each figure of the
-// baseline that moved, one for the rest of them.
+// a case for its run, one for each acceptance limit and one for the baseline,
+// so that a case has the same name from build to build.
 type (
 	junitReport struct {
 		XMLName  xml.Name     `xml:"testsuites"`
@@ -119,45 +119,37 @@ func (r *Result) cases(wall string) []junitCase {
 	}
 	out := []junitCase{run}
 	for _, row := range r.limits() {
-		out = append(out, r.junitCase("limit ", row, row.Pass))
+		out = append(out, r.limitCase(row))
 	}
-	if r.Comparison == nil {
-		none := junitCase{Name: "baseline", Class: clean(r.Name), Time: "0"}
-		if r.State == Absent {
-			none.Skipped = &junitProblem{Message: "there is no baseline"}
-		}
-		return append(out, none)
-	}
-	for _, row := range r.moves() {
-		out = append(out, r.junitCase("baseline ", row, r.State != Moved))
-	}
-	return append(out, junitCase{Name: "baseline, " + figures(r.Comparison.Compared-len(r.Comparison.Moved)) + " that hold", Class: clean(r.Name), Time: "0"})
+	return append(out, r.baselineCase())
 }
 
-func (r *Result) junitCase(what string, row Row, pass bool) junitCase {
-	c := junitCase{Name: clean(what + row.What), Class: clean(r.Name), Time: "0"}
-	if pass {
-		return c
+func (r *Result) limitCase(row Row) junitCase {
+	c := junitCase{Name: clean("limit " + row.What), Class: clean(r.Name), Time: "0"}
+	if !row.Pass {
+		message := fmt.Sprintf("is %s, was %s, allowed %s", row.Is, orDash(row.Was), row.Allowed)
+		c.Failure = &junitProblem{Message: clean(message), Type: "limit"}
 	}
-	kind := "baseline"
-	message := fmt.Sprintf("is %s, was %s, allowed %s", row.Is, orDash(row.Was), row.Allowed)
-	if row.Limit {
-		kind = "limit"
-	}
-	c.Failure = &junitProblem{Message: clean(message), Type: kind, Text: clean(r.context())}
 	return c
 }
 
-// context says which settings changed: most likely they are why.
-func (r *Result) context() string {
-	if r.Comparison == nil {
-		return ""
+// baselineCase is skipped where there is none, and lists what moved.
+func (r *Result) baselineCase() junitCase {
+	c := junitCase{Name: "baseline", Class: clean(r.Name), Time: "0"}
+	switch r.State {
+	case Absent:
+		c.Skipped = &junitProblem{Message: "there is no baseline"}
+	case Moved:
+		lines := []string{"of version " + r.Baseline.Version}
+		for _, s := range r.Comparison.Settings {
+			lines = append(lines, fmt.Sprintf("%s: %s → %s", s.Path, orNone(s.Was), orNone(s.Is)))
+		}
+		for _, row := range r.moves() {
+			lines = append(lines, fmt.Sprintf("%s: was %s, is %s, allowed %s", row.What, row.Was, row.Is, row.Allowed))
+		}
+		c.Failure = &junitProblem{Message: clean(r.kept()), Type: "baseline", Text: clean(strings.Join(lines, "\n"))}
 	}
-	var lines []string
-	for _, s := range r.Comparison.Settings {
-		lines = append(lines, fmt.Sprintf("%s: %s → %s", s.Path, orNone(s.Was), orNone(s.Is)))
-	}
-	return strings.Join(lines, "\n")
+	return c
 }
 
 // clean takes out what XML cannot hold, whatever a file gave for a name; the

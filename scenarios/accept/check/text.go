@@ -4,9 +4,9 @@ import (
 	"fmt"
 	"io"
 	"strings"
-	"text/tabwriter"
 	"unicode/utf8"
 
+	"antelag/scenarios/accept"
 	"antelag/scenarios/quantity"
 )
 
@@ -36,9 +36,9 @@ func (p *Report) WriteText(w io.Writer, colour bool) error {
 	for i := range p.Results {
 		r := &p.Results[i]
 		marks[i] = pad(r.status(), colour)
-		rows[i] = []string{printable(r.Name), r.accepted(), r.kept()}
+		rows[i] = []string{accept.Printable(r.Name), r.accepted(), r.kept()}
 		if r.Verdict == nil {
-			rows[i] = []string{printable(r.Name), printable(r.Err.Error())}
+			rows[i] = []string{accept.Printable(r.Name), accept.Printable(r.Err.Error())}
 		}
 	}
 	table(&out, "", marks, rows)
@@ -55,20 +55,30 @@ func pad(status string, colour bool) string {
 	return word(status, colour) + strings.Repeat(" ", len("ERROR  ")-len(status))
 }
 
-// table writes rows in columns behind marks, which may hold colour.
+// table writes rows in columns behind marks, which may hold colour. The last
+// cell of a row is as long as it likes.
 func table(out *strings.Builder, indent string, marks []string, rows [][]string) {
-	var text strings.Builder
-	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
+	var widths []int
 	for _, row := range rows {
-		fmt.Fprintln(t, strings.Join(row, "\t"))
-	}
-	t.Flush() //nolint:errcheck // a Builder does not fail
-	for i, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
-		mark := ""
-		if i < len(marks) {
-			mark = marks[i]
+		for i, cell := range row[:len(row)-1] {
+			if i == len(widths) {
+				widths = append(widths, 0)
+			}
+			widths[i] = max(widths[i], utf8.RuneCountInString(cell))
 		}
-		fmt.Fprintf(out, "%s%s%s\n", indent, mark, strings.TrimRight(line, " "))
+	}
+	for i, row := range rows {
+		line := indent
+		if i < len(marks) {
+			line += marks[i]
+		}
+		for k, cell := range row {
+			line += cell
+			if k < len(row)-1 {
+				line += strings.Repeat(" ", widths[k]-utf8.RuneCountInString(cell)+2)
+			}
+		}
+		fmt.Fprintln(out, strings.TrimRight(line, " "))
 	}
 }
 
@@ -88,13 +98,13 @@ func (r *Result) details(out *strings.Builder, colour bool) {
 	if r.Pass() && len(failed) == 0 && !changed {
 		return
 	}
-	fmt.Fprintf(out, "\n%s: %s\n", printable(r.Name), printable(r.Scene.Title))
+	fmt.Fprintf(out, "\n%s: %s\n", accept.Printable(r.Name), accept.Printable(r.Scene.Title))
 	lane := &r.Verdict.Lanes[0]
 	if lane.Trip != nil {
-		fmt.Fprintf(out, "  %s\n", printable(lane.Ending(r.Verdict.Time)))
+		fmt.Fprintf(out, "  %s\n", accept.Printable(lane.Ending(r.Verdict.Time)))
 	}
 	if r.Err != nil {
-		fmt.Fprintf(out, "  %s\n", printable(r.Err.Error()))
+		fmt.Fprintf(out, "  %s\n", accept.Printable(r.Err.Error()))
 	}
 	if r.Comparison != nil {
 		r.changes(out)
@@ -109,7 +119,7 @@ func (r *Result) changes(out *strings.Builder) {
 		fmt.Fprintf(out, "  settings that are not those of the baseline:\n")
 		var rows [][]string
 		for _, s := range c.Settings {
-			rows = append(rows, []string{printable(s.Path), printable(orNone(s.Was)) + " → " + printable(orNone(s.Is))})
+			rows = append(rows, []string{accept.Printable(s.Path), accept.Printable(orNone(s.Was)) + " → " + accept.Printable(orNone(s.Is))})
 		}
 		table(out, "    ", nil, rows)
 		if c.Same() {
@@ -122,10 +132,10 @@ func (r *Result) changes(out *strings.Builder) {
 		if n > len(shown) {
 			text += ", …"
 		}
-		fmt.Fprintf(out, "  %s not in the baseline: %s\n", figures(n), printable(text))
+		fmt.Fprintf(out, "  %s not in the baseline: %s\n", figures(n), accept.Printable(text))
 	}
 	if len(c.Moved) > 0 {
-		fmt.Fprintf(out, "  the baseline is of version %s\n", printable(r.Baseline.Version))
+		fmt.Fprintf(out, "  the baseline is of version %s\n", accept.Printable(r.Baseline.Version))
 	}
 }
 
@@ -152,7 +162,6 @@ func (r *Result) failures(out *strings.Builder, failed []Row, colour bool) {
 		rows = append(rows, []string{what, orDash(f.Was), f.Is, f.Allowed})
 		marks = append(marks, mark)
 	}
-	align(rows)
 	table(out, "  ", marks, rows)
 }
 
@@ -161,17 +170,6 @@ func orDash(s string) string {
 		return "–"
 	}
 	return s
-}
-
-// align gives the first column a width, for the marks stand outside of it.
-func align(rows [][]string) {
-	width := 0
-	for _, r := range rows {
-		width = max(width, utf8.RuneCountInString(r[0]))
-	}
-	for _, r := range rows {
-		r[0] += strings.Repeat(" ", width-utf8.RuneCountInString(r[0]))
-	}
 }
 
 // sum counts, and says what is amiss beside the scenarios themselves.
@@ -204,9 +202,9 @@ func (p *Report) sum(out *strings.Builder) {
 		fmt.Fprintf(out, "where a change is meant, --record keeps the new figures\n")
 	}
 	for _, g := range p.Gone {
-		fmt.Fprintf(out, "%s: the scenario of this baseline is gone\n", printable(g))
+		fmt.Fprintf(out, "%s: the scenario of this baseline is gone\n", accept.Printable(g))
 	}
 	if len(p.LeftOut) > 0 {
-		fmt.Fprintf(out, "left out, for they are no scenarios: %s\n", printable(strings.Join(p.LeftOut, ", ")))
+		fmt.Fprintf(out, "left out, for they are no scenarios: %s\n", accept.Printable(strings.Join(p.LeftOut, ", ")))
 	}
 }

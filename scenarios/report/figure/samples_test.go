@@ -99,7 +99,10 @@ func samples() map[string]Figure {
 func TestSamples(t *testing.T) {
 	for name, f := range samples() {
 		t.Run(name, func(t *testing.T) {
-			for _, draw := range []func(Figure) ([]byte, error){Figure.SVG, Figure.PNG} {
+			for i, draw := range []func(Figure) ([]byte, error){Figure.SVG, Figure.PNG} {
+				if i == 1 && name != "map" && name != "constant" {
+					break // pixels take time, and are made of the same
+				}
 				a, err := draw(f)
 				if err != nil {
 					t.Fatal(err)
