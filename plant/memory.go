@@ -177,8 +177,10 @@ func (l *delayLine) visit(each func(*float64)) {
 }
 
 func (p *lagDelay) Memory(each func(*float64)) {
-	each(&p.q)
-	each(&p.v)
+	if !p.instant {
+		each(&p.q)
+		each(&p.v)
+	}
 	p.line.visit(each)
 }
 

@@ -59,6 +59,17 @@ func (l *Loop) Linear() (*Loop, error) {
 	return linear, nil
 }
 
+// TakeLearned gives the loop copies of those compensators of another loop that
+// learn, with what they have learned, at rest and learning no more. The loops have
+// the same channels; where they have other kinds of compensators, nothing is taken.
+func (l *Loop) TakeLearned(from *Loop) {
+	for j := range l.channels {
+		if c, ok := from.channels[j].Compensator.(compensator.Adaptive); ok && l.channels[j].Method == from.channels[j].Method {
+			l.channels[j].Compensator = c.Frozen()
+		}
+	}
+}
+
 // Integrator returns what carries the structure; nil when the target is driven.
 func (l *Loop) Integrator() substructure.Integrator { return l.integrator }
 

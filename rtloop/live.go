@@ -47,22 +47,11 @@ func (l *Loop) Delay(j int) float64 {
 	return math.NaN()
 }
 
-// resting is the share of a channel's peak target below which a motion says
-// nothing of synchronization: what is left of it is noise of the sensors and
-// the structure's last ringing. A choice of ours.
-const resting = 0.005
-
-// AtRest reports whether the target of channel j has moved so little over the
-// trailing window, against its peak so far, that its synchronization subspace
-// says nothing: amplitude √(2σ_xx) below 0.5 % of the peak.
+// AtRest reports whether channel j moves so little now that its synchronization
+// subspace says nothing (see gauge.Tracking).
 func (l *Loop) AtRest(j int) bool {
 	t := l.channels[j].tracking
-	if t == nil {
-		return false
-	}
-	e := t.Subspace()
-	sin, cos := math.Sincos(e.Tilt) // NaN for a point, which has no axes
-	return !(math.Hypot(e.Major*cos, e.Minor*sin) >= resting*t.PeakTarget())
+	return t != nil && t.AtRest()
 }
 
 // Judged reports whether there is energy to judge: a structure is integrated.

@@ -87,3 +87,14 @@ func (s *Scenario) WithLane(name, from, channel string) (*Scenario, error) {
 	doc.tree["lane"] = append(lanes, table)
 	return read(doc, s.dir)
 }
+
+// Plain returns the scenario without [spread], so that settings may be changed
+// without minding how far they are meant to spread.
+func (s *Scenario) Plain() (*Scenario, error) {
+	if len(s.Spread) == 0 {
+		return s, nil
+	}
+	doc := s.doc.clone()
+	delete(doc.tree, "spread")
+	return read(doc, s.dir)
+}

@@ -326,25 +326,31 @@ func buildPart[B any](table *kind.Table[B], name string, given kind.Values) (fou
 func (b *builder) lane(i int) (*rtloop.Loop, error) {
 	var channels []rtloop.Channel
 	for j := range b.s.Channels {
-		part, path := b.s.Channels[j].Compensator, "channel["+strconv.Itoa(j)+"].compensator"
-		if i >= 0 && (b.s.Lanes[i].Channel == "" || b.s.Lanes[i].Channel == b.s.Channels[j].Name) {
-			part, path = b.s.Lanes[i].Compensator, "lane["+strconv.Itoa(i)+"].compensator"
-		}
-		c, err := b.channel(j)
+		c, err := b.compensated(i, j)
 		if err != nil {
 			return nil, err
-		}
-		c.Method = part.Kind.Name
-		comp, err := buildPart(&compensator.Kinds, part.Kind.Name, part.Values)
-		if err == nil {
-			c.Compensator, err = comp.New(b.tick(), comp.values)
-		}
-		if err != nil {
-			return nil, b.s.doc.settingError(path, part.Kind, err)
 		}
 		channels = append(channels, c)
 	}
 	return b.loop(b.config(channels))
+}
+
+// compensated builds channel j with the compensator that lane i has there.
+func (b *builder) compensated(i, j int) (rtloop.Channel, error) {
+	part, path := b.s.Channels[j].Compensator, "channel["+strconv.Itoa(j)+"].compensator"
+	if i >= 0 && (b.s.Lanes[i].Channel == "" || b.s.Lanes[i].Channel == b.s.Channels[j].Name) {
+		part, path = b.s.Lanes[i].Compensator, "lane["+strconv.Itoa(i)+"].compensator"
+	}
+	c, err := b.channel(j)
+	if err != nil {
+		return c, err
+	}
+	c.Method = part.Kind.Name
+	comp, err := buildPart(&compensator.Kinds, part.Kind.Name, part.Values)
+	if err == nil {
+		c.Compensator, err = comp.New(b.tick(), comp.values)
+	}
+	return c, b.s.doc.settingError(path, part.Kind, err)
 }
 
 // channel builds all of channel j but its compensator.

@@ -157,6 +157,10 @@ func parent(path string) string {
 	return ""
 }
 
+// ErrorAt makes an Error that says where in the scenario something does not do,
+// like channel[0].specimen[1].
+func (s *Scenario) ErrorAt(path string, err error) error { return s.doc.errorAt(path, err) }
+
 // errorAt makes an Error for a path: at its line, or at that of the nearest
 // table around it. Indexes are left out of the key: the line says which.
 func (d *document) errorAt(path string, err error) error {

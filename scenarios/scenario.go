@@ -87,3 +87,13 @@ type Spread struct {
 
 // Configured is the name of the lane that uses the channels' own compensators.
 const Configured = "configured"
+
+// Compensator returns the compensator that a lane has for channel i.
+func (s *Scenario) Compensator(lane string, i int) Part {
+	for _, l := range s.Lanes {
+		if l.Name == lane && (l.Channel == "" || l.Channel == s.Channels[i].Name) {
+			return l.Compensator
+		}
+	}
+	return s.Channels[i].Compensator
+}

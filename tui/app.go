@@ -3,7 +3,6 @@ package tui
 import (
 	"context"
 	"fmt"
-	"runtime/debug"
 	"time"
 
 	"github.com/gdamore/tcell/v2"
@@ -26,15 +25,11 @@ const (
 // drawing, all in one goroutine.
 type app struct {
 	session *session
-	board   *Dashboard
-	grid    *canvas.Grid
-	term    terminal
-	palette *palette
+	desk
 
-	page    page
-	pressed bool // the mouse button
-	quit    bool
-	dirty   bool // something is to be drawn
+	page  page
+	quit  bool
+	dirty bool // something is to be drawn
 }
 
 // frames is how often the screen is drawn at most, a second.
@@ -65,22 +60,15 @@ func run(ctx context.Context, s *scenarios.Scenario, term terminal, clock pace.C
 }
 
 func newApp(s *session, term terminal) *app {
-	return &app{session: s, board: NewDashboard(), grid: canvas.NewGrid(0, 0), term: term, palette: paletteFor(term.Colors())}
+	return &app{session: s, desk: newDesk(term)}
 }
 
 // loop is the dashboard's life, from the first frame on.
-func (a *app) loop(ctx context.Context) (err error) {
-	defer a.term.Fini()
-	defer func() {
-		if r := recover(); r != nil {
-			err = &Panic{Where: "the dashboard", Value: r, Stack: debug.Stack()}
-		}
-	}()
-	a.term.EnableMouse(tcell.MouseButtonEvents)
-	a.term.HideCursor()
-	events, quit := make(chan tcell.Event, 64), make(chan struct{})
-	defer close(quit)
-	go a.term.ChannelEvents(events, quit)
+func (a *app) loop(ctx context.Context) error {
+	return a.sit(func(events <-chan tcell.Event) error { return a.live(ctx, events) })
+}
+
+func (a *app) live(ctx context.Context, events <-chan tcell.Event) error {
 	frame := time.NewTicker(time.Second / frames)
 	defer frame.Stop()
 
@@ -137,20 +125,14 @@ func (a *app) event(ev tcell.Event) {
 // draw draws one frame.
 func (a *app) draw() {
 	a.dirty = false
-	w, h := a.term.Size()
-	if gw, gh := a.grid.Size(); gw != w || gh != h {
-		a.grid.Resize(w, h)
-	}
-	switch {
-	case w < MinWidth || h < MinHeight:
-		a.grid.Clear()
-		a.board.DrawTooSmall(a.grid)
-	case a.page == pageWelcome:
-		a.board.DrawWelcome(a.session.snapshot(), a.grid)
-	case a.page == pageHelp:
-		a.board.DrawHelp(a.grid)
-	default:
-		a.board.Draw(a.session.snapshot(), a.grid)
-	}
-	a.palette.paint(a.grid, a.term)
+	a.desk.draw(func(d *Dashboard, g *canvas.Grid) {
+		switch a.page {
+		case pageWelcome:
+			d.DrawWelcome(a.session.snapshot(), g)
+		case pageHelp:
+			d.DrawHelp(g)
+		default:
+			d.Draw(a.session.snapshot(), g)
+		}
+	})
 }

@@ -108,7 +108,7 @@ func (a *app) rune(r rune) {
 	case 'w':
 		s.askWrite()
 	case 's', 'p':
-		s.screenshot(a.grid)
+		s.say("%s", screenshot(a.grid))
 	default:
 		s.say("no key %q; ? shows the keys", r)
 	}
@@ -264,9 +264,7 @@ func (s *session) ask(question, text string, answer func(string)) {
 // mouse takes a click.
 func (a *app) mouse(ev *tcell.EventMouse) {
 	s := a.session
-	down := ev.Buttons()&tcell.Button1 != 0
-	clicked := down && !a.pressed
-	a.pressed = down
+	hit, clicked := a.clicked(ev)
 	wheel := ev.Buttons() & (tcell.WheelUp | tcell.WheelDown)
 	if s.prompt != nil || s.editing || !clicked && wheel == 0 {
 		return
@@ -282,7 +280,6 @@ func (a *app) mouse(ev *tcell.EventMouse) {
 		s.moveCursor(map[bool]int{true: -1, false: 1}[wheel&tcell.WheelUp != 0])
 		return
 	}
-	hit := a.board.Hit(ev.Position())
 	switch hit.Kind {
 	case SelectLane:
 		s.show(hit.Index, s.channel)

@@ -92,7 +92,7 @@ func (d *Dashboard) Draw(s *Snapshot, g *canvas.Grid) {
 		return
 	}
 	d.plots.follow(s)
-	for _, p := range layout(d.w, d.h, d.View) {
+	for _, p := range s.arranged().places(d.w, d.h, d.View) {
 		b := box{g.Whole().Sub(p.x, p.y, p.w, p.h), p.rect}
 		panels[p.panel].draw(d, s, b)
 	}
@@ -172,6 +172,8 @@ const (
 	panelCurve
 	panelEvents
 	panelBottom
+	panelRecord
+	panelDelay
 	panelCount
 )
 
@@ -198,9 +200,31 @@ func init() {
 		panelCurve:    {"curve", (*Dashboard).drawCurve},
 		panelEvents:   {"events", (*Dashboard).drawEvents},
 		panelBottom:   {"", (*Dashboard).drawBottom},
+		panelRecord:   {"record", (*Dashboard).drawRecord},
+		panelDelay:    {"delay", (*Dashboard).drawDelay},
 	} {
 		panels[id] = p
 	}
+}
+
+// arrangement is how the panels of one kind of dashboard are placed.
+type arrangement struct {
+	places func(w, h int, v View) []place
+	all    func(w, h int) bool // the screen has room for every panel at once
+	views  []string            // what each view shows, where it has not
+	keys   []keyHelp
+}
+
+var (
+	loopArranged   = arrangement{layout, allShown, viewNames[:], keys}
+	recordArranged = arrangement{playLayout, allPlayed, playViewNames[:], playKeys}
+)
+
+func (s *Snapshot) arranged() *arrangement {
+	if s.Record != nil {
+		return &recordArranged
+	}
+	return &loopArranged
 }
 
 // place is where a panel goes.
@@ -215,13 +239,7 @@ func allShown(w, h int) bool { return w >= 150 && h >= 36 }
 
 // layout places the panels of a view on a screen of at least the smallest size.
 func layout(w, h int, v View) []place {
-	head := 1
-	if h >= 34 {
-		head = 2
-	}
-	r := rect{0, 0, w, h}.rows(head, -1, 1)
-	out := append(make([]place, 0, panelCount), place{panelHeader, r[0]}, place{panelBottom, r[2]})
-	body := r[1]
+	out, body := headAndFoot(w, h)
 	switch {
 	case allShown(w, h):
 		return everything(out, body)
@@ -235,6 +253,16 @@ func layout(w, h int, v View) []place {
 		return tallTracking(out, body)
 	}
 	return smallTracking(out, body)
+}
+
+// headAndFoot places header and bottom line, and returns what is left.
+func headAndFoot(w, h int) (out []place, body rect) {
+	head := 1
+	if h >= 34 {
+		head = 2
+	}
+	r := rect{0, 0, w, h}.rows(head, -1, 1)
+	return append(make([]place, 0, panelCount), place{panelHeader, r[0]}, place{panelBottom, r[2]}), r[1]
 }
 
 // verdictRows is the height of the verdict: a title, six limits and how the run

@@ -47,6 +47,7 @@ var samples = []struct {
 	{"running", sampleRunningWell}, {"tripped", sampleTripped}, {"diverged", sampleDiverged}, {"paused", samplePaused}, {"at-rest", sampleAtRest},
 	{"editing", sampleEditing}, {"refused", sampleRefused}, {"adaptive", sampleAdaptive}, {"driven", sampleDrivenTarget},
 	{"lanes", sampleManyLanes}, {"start", sampleAtStart}, {"nothing", sampleNothing}, {"asking", sampleAsking},
+	{"recorded", sampleRecorded},
 }
 
 func TestGoldenScreens(t *testing.T) {
@@ -56,8 +57,9 @@ func TestGoldenScreens(t *testing.T) {
 			if size[0] != 80 && size[0] != 200 && sample.name != "running" && sample.name != "lanes" && sample.name != "tripped" {
 				continue
 			}
-			for v := View(0); v < views; v++ {
-				if v > 0 && (allShown(size[0], size[1]) || size[0] == 81) {
+			a := sample.make().arranged()
+			for v := range View(len(a.views)) {
+				if v > 0 && (a.all(size[0], size[1]) || size[0] == 81) {
 					continue
 				}
 				name := fmt.Sprintf("%s-%dx%d-%d", sample.name, size[0], size[1], v+1)
@@ -86,11 +88,13 @@ func TestGoldenPages(t *testing.T) {
 }
 
 // sizes are all kinds of screens from the smallest to beyond the largest.
-func sizes(visit func(w, h int, v View)) {
-	for w := MinWidth; w <= 222; w += 7 {
-		for h := MinHeight; h <= 72; h += 3 {
-			for v := range views {
-				visit(w, h, v)
+func sizes(visit func(a *arrangement, w, h int, v View)) {
+	for _, a := range []*arrangement{&loopArranged, &recordArranged} {
+		for w := MinWidth; w <= 222; w += 7 {
+			for h := MinHeight; h <= 72; h += 3 {
+				for v := range a.views {
+					visit(a, w, h, View(v))
+				}
 			}
 		}
 	}
@@ -98,12 +102,12 @@ func sizes(visit func(w, h int, v View)) {
 
 // Panels tile the screen: every cell belongs to exactly one.
 func TestPanelsTileTheScreen(t *testing.T) {
-	sizes(func(w, h int, v View) {
+	sizes(func(a *arrangement, w, h int, v View) {
 		owner := make([]panelID, w*h)
 		for i := range owner {
 			owner[i] = -1
 		}
-		for _, p := range layout(w, h, v) {
+		for _, p := range a.places(w, h, v) {
 			for y := p.y; y < p.y+p.h; y++ {
 				for x := p.x; x < p.x+p.w; x++ {
 					if x < 0 || y < 0 || x >= w || y >= h {
@@ -127,21 +131,37 @@ func TestPanelsTileTheScreen(t *testing.T) {
 // Between them the views show every panel, and where everything has room one
 // view does.
 func TestViewsShowEveryPanel(t *testing.T) {
-	for w := MinWidth; w <= 222; w += 7 {
-		for h := MinHeight; h <= 72; h += 3 {
-			seen := map[panelID]bool{}
-			for v := range views {
-				if v > 0 && allShown(w, h) {
-					break
-				}
-				for _, p := range layout(w, h, v) {
-					seen[p.panel] = true
-				}
+	most := map[*arrangement]map[panelID]bool{}
+	sizes(func(a *arrangement, w, h int, v View) {
+		if most[a] == nil {
+			most[a] = map[panelID]bool{}
+		}
+		for _, p := range a.places(w, h, v) {
+			most[a][p.panel] = true
+		}
+	})
+	sizes(func(a *arrangement, w, h int, v View) {
+		seen := map[panelID]bool{}
+		for v := range a.views {
+			if v > 0 && a.all(w, h) {
+				break
 			}
-			if len(seen) != int(panelCount) {
-				t.Errorf("%d×%d: the views show %d of %d panels", w, h, len(seen), panelCount)
+			for _, p := range a.places(w, h, View(v)) {
+				seen[p.panel] = true
 			}
 		}
+		if len(seen) != len(most[a]) {
+			t.Errorf("%d×%d: the views show %d of %d panels", w, h, len(seen), len(most[a]))
+		}
+	})
+	all := map[panelID]bool{}
+	for _, panels := range most {
+		for p := range panels {
+			all[p] = true
+		}
+	}
+	if len(all) != int(panelCount) {
+		t.Errorf("%d of %d panels are shown somewhere", len(all), panelCount)
 	}
 }
 
@@ -150,10 +170,10 @@ func TestPanelsHaveRoom(t *testing.T) {
 	least := map[panelID]rect{
 		panelTrace: {w: 40, h: 7}, panelError: {w: 40, h: 5}, panelSubspace: {w: 28, h: 8}, panelEnergy: {w: 28, h: 5},
 		panelEditor: {w: 30, h: 8}, panelVerdict: {w: 44, h: 8}, panelCurve: {w: 34, h: 7}, panelPace: {w: 28, h: 9},
-		panelLanes: {w: 40, h: 5}, panelEvents: {w: 40, h: 3},
+		panelLanes: {w: 40, h: 5}, panelEvents: {w: 40, h: 3}, panelRecord: {w: 28, h: 7}, panelDelay: {w: 40, h: 7},
 	}
-	sizes(func(w, h int, v View) {
-		for _, p := range layout(w, h, v) {
+	sizes(func(a *arrangement, w, h int, v View) {
+		for _, p := range a.places(w, h, v) {
 			if l := least[p.panel]; p.w < l.w || p.h < l.h {
 				t.Errorf("%d×%d, %v: %s has %d×%d, needs %d×%d", w, h, v, panels[p.panel].title, p.w, p.h, l.w, l.h)
 			}
@@ -171,14 +191,15 @@ func TestDrawEverySize(t *testing.T) {
 		made[i] = samples[i].make()
 	}
 	n := 0
-	sizes(func(w, h int, v View) {
-		n++
+	sizes(func(a *arrangement, w, h int, v View) {
+		for n++; made[n%len(samples)].arranged() != a; n++ {
+		}
 		sample := samples[n%len(samples)]
 		g.Resize(w, h)
 		d.View = v
 		d.Draw(made[n%len(samples)], g)
 		rows := strings.Split(g.String(), "\n")
-		for _, p := range layout(w, h, v) {
+		for _, p := range a.places(w, h, v) {
 			title := panels[p.panel].title
 			row := []rune(rows[p.y])
 			if title != "" && !strings.HasPrefix(string(row[min(p.x+2, len(row)):]), title) {

@@ -1,6 +1,8 @@
 package tui
 
 import (
+	"fmt"
+
 	"antelag/tui/canvas"
 )
 
@@ -17,8 +19,10 @@ func (d *Dashboard) drawBottom(s *Snapshot, b box) {
 		return
 	}
 	right := b.at.w - 1
-	tab := "v view " + string('1'+rune(d.View)) + "/3: " + d.View.String()
-	if !allShown(d.w, d.h) && canvas.Width(s.Message)+canvas.Width(tab)+5 <= right {
+	a := s.arranged()
+	view := int(d.View) % len(a.views)
+	tab := fmt.Sprintf("v view %d/%d: %s", view+1, len(a.views), a.views[view])
+	if !a.all(d.w, d.h) && canvas.Width(s.Message)+canvas.Width(tab)+5 <= right {
 		n := canvas.Width(tab)
 		b.Text(right-n, 0, canvas.Accent, tab)
 		d.clickAt(b, right-n, 0, n, Action{NextView, 0})
@@ -28,7 +32,7 @@ func (d *Dashboard) drawBottom(s *Snapshot, b box) {
 	if s.Message != "" {
 		x += b.sub(0, 0, right, 1).Text(1, 0, canvas.Bold, s.Message) + 3
 	}
-	drawKeys(b, x, right, bottomKeys(&s.Editor))
+	drawKeys(b, x, right, bottomKeys(&s.Editor, a.keys))
 }
 
 // drawKeys writes as many keys and their meaning as fit between two columns.
@@ -43,7 +47,7 @@ func drawKeys(b box, x, right int, keys []keyHelp) {
 }
 
 // bottomKeys are the keys to name, the most useful first.
-func bottomKeys(e *EditorView) []keyHelp {
+func bottomKeys(e *EditorView, keys []keyHelp) []keyHelp {
 	if e.Editing {
 		return []keyHelp{{"Enter", "apply", ""}, {"Esc", "leave as it was", ""}}
 	}

@@ -28,7 +28,7 @@ func (d *Dashboard) drawEnergy(s *Snapshot, b box) {
 	}
 	in := b.frame(panelEnergy, note, canvas.Dim)
 	if !v.Structure {
-		drawLines(in, canvas.Dim, "The target is driven: there is no structure whose energy could be judged.")
+		drawLines(in, canvas.Dim, v.Missing)
 		return
 	}
 	tight, gap := in.at.w < 45, 2

@@ -17,6 +17,9 @@ func (d *Dashboard) drawError(s *Snapshot, b box) {
 	limited := t.ErrorLimit > 0 && defined(t.ErrorLimit)
 	near := limited && most > t.ErrorLimit/2
 	note, ink := errorNote(t, most, limited)
+	if s.Record != nil && defined(most) {
+		note = "most " + length(most)
+	}
 	in := b.frame(panelError, note, ink)
 	if len(t.Time) == 0 {
 		in.Text(1, 0, canvas.Dim, "target less measured: nothing has moved yet")

@@ -33,12 +33,23 @@ func (d *Dashboard) drawHeader(s *Snapshot, b box) {
 	}
 	text = cut(text, max(24, b.at.w-canvas.Width(cautions[2])-3))
 	n := second.Text(1, 0, canvas.Plain, text)
-	drawCaution(second, n+4)
+	drawCaution(s, second, n+4)
+}
+
+// recordCautions are those of a log: it is no simulation.
+var recordCautions = []string{
+	"RECORD of a test: it shows what happened, not what will",
+	"RECORD of a test",
+	"RECORD",
 }
 
 // drawCaution writes the longest caution that fits to the right of column from.
-func drawCaution(b box, from int) {
-	for _, c := range cautions {
+func drawCaution(s *Snapshot, b box, from int) {
+	texts := cautions
+	if s.Record != nil {
+		texts = recordCautions
+	}
+	for _, c := range texts {
 		if canvas.Width(c) <= b.at.w-1-from {
 			b.TextRight(b.at.w-1, 0, canvas.Warn, c)
 			return
@@ -80,7 +91,7 @@ func (d *Dashboard) drawState(s *Snapshot, b box, caution bool) {
 		x += n + 2
 	}
 	if caution {
-		drawCaution(b, x)
+		drawCaution(s, b, x)
 	}
 }
 
@@ -116,6 +127,9 @@ func (s *Snapshot) lane() *LaneView {
 // state is the state of the run in a word.
 func state(s *Snapshot) (string, canvas.Ink) {
 	l := s.lane()
+	if s.Record != nil && s.Record.Seeking {
+		return "SEEKING", canvas.Warn
+	}
 	stopped := l != nil && (l.Outcome == rtloop.Tripped || l.Outcome == rtloop.Diverged)
 	switch {
 	case stopped:
@@ -128,6 +142,9 @@ func state(s *Snapshot) (string, canvas.Ink) {
 		return "ENDED", canvas.Accent
 	case s.Clock.Paused:
 		return "PAUSED", canvas.Warn
+	}
+	if s.Record != nil {
+		return "PLAYING", canvas.Good
 	}
 	return "RUNNING", canvas.Good
 }

@@ -32,7 +32,7 @@ var keys = []keyHelp{
 }
 
 // meanings are what each panel shows, for the help page.
-var meanings = []struct{ panel, text string }{
+var meanings = []meaning{
 	{"displacement", "target of the integration, command sent, position measured"},
 	{"error", "target less measured; the loop trips at the limit"},
 	{"synchronization", "measured against target: 45° is right, an open ellipse late or early, another slope too large or too small"},
@@ -45,7 +45,23 @@ var meanings = []struct{ panel, text string }{
 
 // DrawHelp draws the keys and the meaning of every panel, on one page that fits
 // the smallest screen.
-func (d *Dashboard) DrawHelp(g *canvas.Grid) {
+func (d *Dashboard) DrawHelp(g *canvas.Grid) { d.drawKeyHelp(g, keys, meanings) }
+
+// meaning is what a panel shows, for the help page.
+type meaning struct{ panel, text string }
+
+// playMeanings are those of a log that is played.
+var playMeanings = []meaning{
+	{"displacement", "target and command as they were recorded, position measured"},
+	{"error", "target less measured"},
+	{"synchronization", "measured against target: 45° is right, an open ellipse late or early, another slope too large or too small"},
+	{"delay", "of the last two seconds, against time"},
+	{"record", "figures since the last seek"},
+	{"energy margin", "as it was logged; below 0 % the loop grew"},
+	{"events", "where it was worst, and what was mended in reading"},
+}
+
+func (d *Dashboard) drawKeyHelp(g *canvas.Grid, keys []keyHelp, meanings []meaning) {
 	d.begin(g)
 	if d.tooSmall(g) {
 		return

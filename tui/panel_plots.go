@@ -15,14 +15,15 @@ var (
 	measuredKey = canvas.Key{Name: "measured", Ink: canvas.Measured, Style: canvas.Dashed}
 	commandKey  = canvas.Key{Name: "command", Ink: canvas.Command, Style: canvas.Dotted}
 	errorKey    = canvas.Key{Name: "error", Ink: canvas.Error, Style: canvas.Solid}
+	delayKey    = canvas.Key{Name: "delay", Ink: canvas.Measured, Style: canvas.Solid}
 	marginKey   = canvas.Key{Name: "margin", Ink: canvas.Measured, Style: canvas.Solid}
 )
 
 // plots is what drawing keeps from frame to frame: the scales, and memory.
 type plots struct {
-	trace, lag, subspace, energy, curve canvas.Plot
+	trace, lag, subspace, energy, curve, delay canvas.Plot
 
-	traceScale, lagScale, subspaceScale, energyScale, curveScale canvas.Scale
+	traceScale, lagScale, subspaceScale, energyScale, curveScale, delayScale canvas.Scale
 
 	shown    shown
 	curveOf  string
@@ -43,6 +44,7 @@ func (p *plots) init() {
 	p.traceScale = canvas.Scale{Symmetric: true, MinSpan: least}
 	p.lagScale = canvas.Scale{Symmetric: true, MinSpan: least / 10}
 	p.subspaceScale = canvas.Scale{Symmetric: true, MinSpan: least}
+	p.delayScale = canvas.Scale{MinSpan: 1e-3}
 }
 
 // follow lets the scales start anew when another lane or channel is looked at.
@@ -52,7 +54,7 @@ func (p *plots) follow(s *Snapshot) {
 		return
 	}
 	p.shown, p.timeSpan = now, 0
-	for _, scale := range []*canvas.Scale{&p.traceScale, &p.lagScale, &p.subspaceScale, &p.energyScale} {
+	for _, scale := range []*canvas.Scale{&p.traceScale, &p.lagScale, &p.subspaceScale, &p.energyScale, &p.delayScale} {
 		scale.Reset()
 	}
 }

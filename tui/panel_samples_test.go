@@ -124,6 +124,18 @@ func sampleDiverged() *Snapshot {
 	return s
 }
 
+func sampleRecorded() *Snapshot {
+	s := sampleRunningWell()
+	s.Scenario, s.Title, s.Lanes, s.Trace.ErrorLimit = "yesterday.csv", "recorded test", nil, math.Inf(1)
+	s.Energy.Limit, s.Energy.AddedDamping = none, none
+	s.Record = &RecordView{Since: 8.25, NRMSE: 0.0312, PeakError: 0.00143, PeakTarget: 0.0312, Time: s.Energy.Time, Without: "command"}
+	for _, t := range s.Energy.Time {
+		s.Record.Delay = append(s.Record.Delay, 0.004+0.003*math.Sin(t/2))
+	}
+	s.Message = "late by 7.1 ms"
+	return s
+}
+
 func sampleAtRest() *Snapshot {
 	s := sampleRunningWell()
 	s.Subspace.Resting = true
@@ -180,7 +192,7 @@ func sampleAdaptive() *Snapshot {
 func sampleDrivenTarget() *Snapshot {
 	s := sampleRunningWell()
 	s.Scenario, s.Title = "tracking", "actuator alone, sweep from 0.1 Hz to 20 Hz (invented)"
-	s.Energy = EnergyView{Margin: none, MarginMin: none, AddedDamping: none, Limit: none}
+	s.Energy = EnergyView{Missing: noEnergy, Margin: none, MarginMin: none, AddedDamping: none, Limit: none}
 	for i := range s.Lanes {
 		s.Lanes[i].Margin, s.Lanes[i].Response = none, none
 	}

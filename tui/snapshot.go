@@ -30,9 +30,10 @@ type Snapshot struct {
 	Editor   EditorView
 	Verdict  VerdictView
 	Curve    CurveView
-	Events   []Event // oldest first
-	Message  string  // of the last key, for the bottom line: what happened, or why not
-	Prompt   *Prompt // a question that takes the keys, nil if none
+	Events   []Event     // oldest first
+	Message  string      // of the last key, for the bottom line: what happened, or why not
+	Prompt   *Prompt     // a question that takes the keys, nil if none
+	Record   *RecordView // of a log that is played; nil for a loop
 }
 
 // Clock says where the run stands.
@@ -77,7 +78,8 @@ type SubspaceView struct {
 
 // EnergyView is the energy of the selected lane, all channels together.
 type EnergyView struct {
-	Structure    bool      // false when the target is driven: there is no energy to judge
+	Structure    bool      // false where there is no energy to judge
+	Missing      string    // why there is none
 	Margin       float64   // now
 	MarginMin    float64   // so far
 	AddedDamping float64   // now, of critical
@@ -155,4 +157,14 @@ type Event struct {
 // Prompt is a question in the bottom line.
 type Prompt struct {
 	Question, Text string
+}
+
+// RecordView is what a log that is played says so far.
+type RecordView struct {
+	Seeking               bool
+	Since                 float64 // s, from when on the figures are; NaN: nothing yet
+	NRMSE                 float64
+	PeakError, PeakTarget float64   // m
+	Time, Delay           []float64 // delay of the synchronization subspace over time, s
+	Without               string    // what the log does not have
 }

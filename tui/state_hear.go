@@ -44,6 +44,11 @@ type trail struct {
 // history is the energy margin of a lane over time.
 type history struct{ time, margin []float64 }
 
+func (h *history) add(t, v float64) {
+	h.time = keepLast(append(h.time, t), margins)
+	h.margin = keepLast(append(h.margin, v), margins)
+}
+
 func newSeen(period float64, rig *rtloop.Rig) seen {
 	rate := min(1/period, sampleRate)
 	return seen{
@@ -166,8 +171,7 @@ func (s *session) standing(st *status) {
 func (s *session) laneStands(i int, l *laneStatus) {
 	h := &s.seen.energy[i]
 	if n := len(h.time); n == 0 || s.seen.status.time > h.time[n-1] {
-		h.time = keepLast(append(h.time, s.seen.status.time), margins)
-		h.margin = keepLast(append(h.margin, l.margin), margins)
+		h.add(s.seen.status.time, l.margin)
 	}
 	if l.outcome != s.seen.outcomes[i] {
 		s.seen.outcomes[i] = l.outcome

@@ -111,10 +111,13 @@ func (s *session) subspace() SubspaceView {
 	}
 }
 
+// noEnergy is said where the energy margin would stand.
+const noEnergy = "The target is driven: there is no structure whose energy could be judged."
+
 func (s *session) energy() EnergyView {
 	nan := math.NaN()
 	v := EnergyView{
-		Structure: s.now.Substructure != nil, Margin: nan, MarginMin: nan, AddedDamping: nan,
+		Structure: s.now.Substructure != nil, Missing: noEnergy, Margin: nan, MarginMin: nan, AddedDamping: nan,
 		Limit: limitOf(s.now, "energy_margin"),
 	}
 	if s.lane < len(s.seen.status.lanes) {

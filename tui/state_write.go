@@ -110,19 +110,17 @@ func (s *session) wrote(name string, err error) {
 const mostScreenshots = 9999
 
 // screenshot writes the screen as text, to a name that is free.
-func (s *session) screenshot(g *canvas.Grid) {
+func screenshot(g *canvas.Grid) string {
 	for i := 1; i <= mostScreenshots; i++ {
 		name := fmt.Sprintf("antelag-screen-%d.txt", i)
 		err := writeFile(name, g.String()+"\n", os.O_EXCL)
-		if errors.Is(err, fs.ErrExist) {
+		switch {
+		case errors.Is(err, fs.ErrExist):
 			continue
+		case err != nil:
+			return fmt.Sprintf("no screenshot: %v", err)
 		}
-		if err != nil {
-			s.say("no screenshot: %v", err)
-		} else {
-			s.say("screen written to %s", name)
-		}
-		return
+		return "screen written to " + name
 	}
-	s.say("no screenshot: there are %d already", mostScreenshots)
+	return fmt.Sprintf("no screenshot: there are %d already", mostScreenshots)
 }

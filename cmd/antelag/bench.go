@@ -52,7 +52,11 @@ func bench(cmd *cobra.Command, name string, sets []string) error {
 	if !onTerminal() {
 		return errors.New("bench needs a terminal on stdin and stdout; antelag run " + name + " runs the scenario without one")
 	}
-	err = tui.Run(cmd.Context(), tests[0])
+	return onDashboard(tui.Run(cmd.Context(), tests[0]))
+}
+
+// onDashboard says what ended a dashboard; a panic with where it was.
+func onDashboard(err error) error {
 	var broken *tui.Panic
 	if errors.As(err, &broken) {
 		fmt.Fprintf(os.Stderr, "%s\n", broken.Stack)

@@ -23,12 +23,18 @@ have written, and sum them up. All parts must be there, whole and of one study.`
 			return nil
 		},
 		RunE: func(cmd *cobra.Command, args []string) error {
+			if err := checkPicture(o.png, o.force); err != nil {
+				return err
+			}
 			var sum *study.Summary
 			_, _, err := study.Gather(args[0], o.force, func(st *study.Study) { sum = study.NewSummary(st) }, func(r study.Row) { sum.Add(r) })
 			if err != nil {
 				return err
 			}
-			if err := o.print(cmd.OutOrStdout(), sum, study.Compute{}); err != nil {
+			if err := o.print(cmd.OutOrStdout(), sum); err != nil {
+				return &failure{err}
+			}
+			if err := o.draw(sum); err != nil {
 				return &failure{err}
 			}
 			if !sum.Pass() {
@@ -38,6 +44,7 @@ have written, and sum them up. All parts must be there, whole and of one study.`
 		},
 	}
 	cmd.Flags().BoolVar(&o.force, "force", false, "overwrite existing files")
+	cmd.Flags().StringVar(&o.png, "png", "", "draw the summary into this `file`, .png or .svg")
 	cmd.Flags().BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
 }

@@ -7,7 +7,7 @@ import (
 	"fmt"
 	"io"
 	"io/fs"
-	"os"
+	"path/filepath"
 	"strings"
 	"text/tabwriter"
 
@@ -16,7 +16,6 @@ import (
 	"antelag/compensator/handoff"
 	"antelag/scenarios"
 	"antelag/scenarios/kind"
-	"antelag/scenarios/quantity"
 )
 
 // handoffOptions are the flags of handoff.
@@ -74,6 +73,11 @@ func (o *handoffOptions) run(cmd *cobra.Command, args []string) error {
 	if err != nil {
 		return err
 	}
+	for _, f := range files {
+		if path := filepath.Join(o.dir, f.Name); sameFile(path, args[0]) {
+			return fmt.Errorf("-o: %s is the scenario itself; choose another directory", path)
+		}
+	}
 	if err := o.write(cmd.Context(), files); err != nil {
 		return err
 	}
@@ -90,11 +94,18 @@ func (o *handoffOptions) run(cmd *cobra.Command, args []string) error {
 
 // load reads the scenario and picks what is handed over.
 func (o *handoffOptions) load(name string) (*handoff.Test, error) {
-	s, err := (&runOptions{sets: o.sets, log: "-"}).load([]string{name})
+	changes, err := parseChanges(o.sets)
 	if err != nil {
 		return nil, err
 	}
-	return o.test(s[0])
+	s, err := scenarios.Load(name, changes...)
+	if err != nil {
+		return nil, err
+	}
+	if _, err := s.Build(); err != nil { // its errors know the line
+		return nil, err
+	}
+	return o.test(s)
 }
 
 func (o *handoffOptions) test(s *scenarios.Scenario) (*handoff.Test, error) {
@@ -150,8 +161,8 @@ func (o *handoffOptions) print(out io.Writer, r *handoff.Report) error {
 	t := tabwriter.NewWriter(out, 0, 0, 2, ' ', 0)
 	fmt.Fprintf(t, "channel\tcompensator\tC\tstate\tdouble within\tfloat within\n")
 	for _, c := range r.Channels {
-		fmt.Fprintf(t, "%s\t%s\t%s.h, .c\t%d bytes\t%s\t%s\n", c.Name, c.Compensator, c.Identifier, c.StateBytes,
-			quantity.Short(c.DoubleBound, quantity.Length), quantity.Short(c.FloatBound, quantity.Length))
+		fmt.Fprintf(t, "%s\t%s\t%s.h, .c\t%d bytes\t%.2g m\t%.2g m\n", c.Name, c.Compensator, c.Identifier, c.StateBytes,
+			c.DoubleBound, c.FloatBound)
 	}
 	t.Flush() //nolint:errcheck // the last line tells
 	for _, c := range r.Channels {
@@ -165,7 +176,7 @@ func (o *handoffOptions) print(out io.Writer, r *handoff.Report) error {
 
 // shellWord writes a path as a shell takes it.
 func shellWord(path string) string {
-	if strings.Trim(path, "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789_-./"+string(os.PathSeparator)) == "" {
+	if strings.Trim(path, "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789_-./") == "" {
 		return path
 	}
 	return "'" + strings.ReplaceAll(path, "'", `'\''`) + "'"

@@ -26,10 +26,10 @@ mended is said.`
 
 func (f *logFlags) flags(cmd *cobra.Command) {
 	s := cmd.Flags()
-	s.Var(&f.columns, "map", "which column, by heading or number, is what: time=1,target=x_ref,command=3,measured=4,force=5; damper.target=… names a channel")
-	s.Var(&f.units, "units", "units of columns whose headings name none: mm,kN, or by column target=in,force=kip")
-	s.StringVar(&f.rate, "rate", "", "rate of the rows, like \"1024 Hz\", where there are no time stamps or no good ones")
-	s.StringVar(&f.channel, "channel", "", "read this channel alone")
+	s.Var(&f.columns, "map", "which column is what, by heading or number: time=1,target=x_ref,measured=3,force=4")
+	s.Var(&f.units, "units", "units of columns whose headings name none: mm,kN or target=in,force=kip")
+	s.StringVar(&f.rate, "rate", "", "the rate of rows without good time stamps, like \"1024 Hz\"")
+	s.StringVar(&f.channel, "channel", "", "read the channel of this `NAME` alone")
 }
 
 // options reads the flags; every channel must have what is needed.

@@ -104,13 +104,9 @@ func (o *runOptions) load(args []string) ([]*scenarios.Scenario, error) {
 	if o.log != "" && len(args) > 1 {
 		return nil, errors.New("--log takes one scenario at a time")
 	}
-	var changes []scenarios.Change
-	for _, text := range o.sets {
-		c, err := scenarios.ParseChange(text)
-		if err != nil {
-			return nil, fmt.Errorf("--set: %w", err)
-		}
-		changes = append(changes, c)
+	changes, err := parseChanges(o.sets)
+	if err != nil {
+		return nil, err
 	}
 	var tests []*scenarios.Scenario
 	for _, name := range args {
@@ -126,6 +122,19 @@ func (o *runOptions) load(args []string) ([]*scenarios.Scenario, error) {
 		tests = append(tests, s)
 	}
 	return tests, nil
+}
+
+// parseChanges reads the values of --set.
+func parseChanges(sets []string) ([]scenarios.Change, error) {
+	var changes []scenarios.Change
+	for _, text := range sets {
+		c, err := scenarios.ParseChange(text)
+		if err != nil {
+			return nil, fmt.Errorf("--set: %w", err)
+		}
+		changes = append(changes, c)
+	}
+	return changes, nil
 }
 
 // one runs one scenario, with its log if asked for.

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"os"
 	"runtime"
 	"time"
@@ -12,6 +13,7 @@ import (
 	"github.com/spf13/cobra"
 
 	"antelag/scenarios"
+	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study"
 )
 
@@ -21,6 +23,7 @@ type sweepOptions struct {
 	law      string
 	sampling string
 	csv      string
+	png      string
 	shard    string
 	workers  int
 	force    bool
@@ -55,9 +58,10 @@ parts together. --shard slurm takes i and n from a Slurm job array:
 	f.Int64Var(&o.request.Draws, "draws", 0, "draw the settings of [spread] so many times")
 	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
 	f.StringVar(&o.sampling, "sampling", "", "how draws lie to each other: latin, a Latin hypercube, or independent (default latin)")
-	f.Uint64Var(&o.request.Seed, "seed", 1, "seed of the draws")
+	f.Int64Var(&o.request.Seed, "seed", 1, "seed of the draws")
 	f.StringVar(&o.request.Lane, "lane", scenarios.Configured, "the lane that is judged")
 	f.StringVar(&o.csv, "csv", "", "write every run to this CSV `file`, with its provenance beside it")
+	f.StringVar(&o.png, "png", "", "draw the summary into this `file`, .png or .svg")
 	f.StringVar(&o.shard, "shard", "", "do one part of the runs, `i/n`, or slurm inside a job array")
 	f.IntVar(&o.workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
 	f.BoolVar(&o.force, "force", false, "begin anew where files of another study are in the way")
@@ -94,9 +98,12 @@ func (o *sweepOptions) run(cmd *cobra.Command, args []string) error {
 	}
 	there, began := sum.Runs, time.Now()
 	err = o.runs(cmd.Context(), st, first, last, table, sum)
-	cost := study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
-	if e := o.print(cmd.OutOrStdout(), sum, cost); e != nil {
+	sum.Compute = study.Compute{Wall: time.Since(began).Seconds(), Runs: sum.Runs - there, Workers: o.workers}
+	if e := o.print(cmd.OutOrStdout(), sum); e != nil {
 		return &failure{e}
+	}
+	if e := o.draw(sum); err == nil {
+		err = e
 	}
 	switch {
 	case err != nil && !errors.Is(err, context.Canceled):
@@ -115,6 +122,9 @@ func (o *sweepOptions) prepare(name string) (*study.Study, study.Shard, error) {
 	}
 	if !shard.Whole() && o.csv == "" {
 		return nil, shard, errors.New("--shard writes a part of a table; say which with --csv")
+	}
+	if err := checkPicture(o.png, o.force); err != nil {
+		return nil, shard, err
 	}
 	if o.workers < 0 {
 		return nil, shard, fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.workers)
@@ -165,11 +175,40 @@ func (o *sweepOptions) runs(ctx context.Context, st *study.Study, first, last in
 	return err
 }
 
-func (o *sweepOptions) print(out io.Writer, sum *study.Summary, cost study.Compute) error {
+func (o *sweepOptions) print(out io.Writer, sum *study.Summary) error {
 	if o.json {
 		return writeJSON(out, sum)
 	}
-	return sum.WriteText(out, cost, inColour())
+	return sum.WriteText(out, inColour())
+}
+
+// draw draws the picture, if there is to be one.
+func (o *sweepOptions) draw(sum *study.Summary) error {
+	if o.png == "" || sum.Runs == 0 {
+		return nil
+	}
+	return pngError(figure.Save(o.png, sum.Picture(), o.force))
+}
+
+// checkPicture refuses the name of a picture before anything has run.
+func checkPicture(path string, force bool) error {
+	if path == "" {
+		return nil
+	}
+	if _, err := figure.Format(path); err != nil {
+		return pngError(err)
+	}
+	if _, err := os.Lstat(path); err == nil && !force {
+		return fmt.Errorf("--png: %s: %w; --force overwrites it", path, fs.ErrExist)
+	}
+	return nil
+}
+
+func pngError(err error) error {
+	if err != nil {
+		err = fmt.Errorf("--png: %w", err)
+	}
+	return err
 }
 
 // fileError sorts errors about output files: what stands in the way is for the

@@ -39,7 +39,8 @@ var adaptiveInverseMethod = method{"adaptive-inverse", func(t tuned) code {
     s->y = in->y;
     return (real)u;
 `,
-		roundings: 1, magnitude: func(p peaks) float64 { return p.u },
+		cautions:  learns,
+		roundings: 1, terms: peaks{u: 1},
 		reason: "all is double in either build, and the command is rounded once",
 	}
 	c.double("TICK", t.tick, "dt, s")

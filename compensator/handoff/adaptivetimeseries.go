@@ -34,7 +34,8 @@ var adaptiveTimeSeriesMethod = method{"adaptive-time-series", func(t tuned) code
 		prime:   "    learn(s, (double)in->y);\n    s->last = (double)u;\n",
 		command: timeSeriesCommand,
 
-		roundings: 1, magnitude: func(p peaks) float64 { return p.u },
+		cautions:  learns,
+		roundings: 1, terms: peaks{u: 1},
 		reason: "all is double in either build, and the command is rounded once",
 	}
 	c.timeSeriesConstants(t, l)

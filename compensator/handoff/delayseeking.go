@@ -41,7 +41,8 @@ var delaySeekingMethod = method{"delay-seeking", func(t tuned) code {
     return u;
 `,
 		tables:    table("weight", "ORDER + 1", weights, "c_i = (-1)^i C(n+1, i+1)"),
-		roundings: order + 10, magnitude: func(p peaks) float64 { return sum * p.x },
+		cautions:  learns,
+		roundings: order + 10, terms: peaks{x: sum},
 		reason: "constant, product, seven of the interpolation and one sum for each term; the delay is double in either build",
 	}
 	c.whole("ORDER", order, "n")

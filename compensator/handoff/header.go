@@ -54,8 +54,14 @@ func exactly(s *kind.Setting, v kind.Value) string {
 	if s.Type == kind.WordType {
 		return v.Text
 	}
-	short, exact := s.Format(v.Num), quantity.Exact(v.Num, s.Dim)
-	if s.Type == kind.IntegerType || s.Dim == quantity.None {
+	return shown(v.Num, s.Dim)
+}
+
+// shown writes a value for people, and in all its digits in SI where that is not
+// the same.
+func shown(v float64, dim quantity.Dim) string {
+	short, exact := quantity.Short(v, dim), quantity.Exact(v, dim)
+	if dim == quantity.None || short == exact {
 		return exact
 	}
 	return short + " (" + exact + ")"
@@ -106,22 +112,43 @@ func (u *unit) limits() []string {
 			out = append(out, fmt.Sprintf("  %s: NOT GUARDED, the scenario gives no limit", m.name))
 			continue
 		}
-		out = append(out, fmt.Sprintf("  %s: %s (%s) %s", m.name, ascii(quantity.Short(m.value, m.dim)), quantity.Exact(m.value, m.dim), m.what))
+		out = append(out, fmt.Sprintf("  %s: %s, %s", m.name, ascii(shown(m.value, m.dim)), m.what))
 	}
 	return out
 }
 
 // builds says what the two builds do.
 func (u *unit) builds() []string {
-	r := u.report
-	out := []string{
-		"", fmt.Sprintf("Builds. real is double, or float where ANTELAG_FLOAT is defined. On the vectors that came with this file, commands up to %.4g m,"+
-			" the double build differs from the program that it was tuned with by at most %.2g m (%g of the peak), the float build by at most %.2g m (%s).",
-			r.Peak, r.DoubleBound, doublePart, r.FloatBound, u.code.reason),
-		"Do not compile with -ffast-math: the guard needs NaN to be NaN.",
-		fmt.Sprintf("The state takes about %d bytes in the double build.", r.StateBytes),
+	c := &u.code
+	float := "The float build, given the same numbers, commands just the same."
+	if c.roundings > 0 {
+		float = fmt.Sprintf("The float build, given the same numbers, comes within %d * 2^-24 * (%s) of it, |.| being peaks: %s.", c.roundings, c.terms.text(), c.reason)
 	}
-	return append(out, u.code.cautions...)
+	out := []string{
+		"", fmt.Sprintf("Builds. real is double, or float where ANTELAG_FLOAT is defined. The double build does the operations of the program that it was tuned with, in their order,"+
+			" and comes within %g of the peak command of it. %s The self-test holds both to that.", doublePart, float),
+		"Do not compile with -ffast-math: the guard needs NaN to be NaN.",
+		fmt.Sprintf("The state takes about %d bytes in the double build.", u.report.StateBytes),
+	}
+	return append(out, c.cautions...)
+}
+
+// text writes the sum of parts of peaks.
+func (p peaks) text() string {
+	var parts []string
+	for _, t := range []struct {
+		name string
+		part float64
+	}{{"|x|", p.x}, {"s |v|", p.v}, {"s^2 |a|", p.a}, {"|u|", p.u}} {
+		switch t.part {
+		case 0:
+		case 1:
+			parts = append(parts, t.name)
+		default:
+			parts = append(parts, fmt.Sprintf("%.4g %s", t.part, t.name))
+		}
+	}
+	return strings.Join(parts, " + ")
 }
 
 // text puts the channel's names into a C text.

@@ -11,7 +11,7 @@ var inverseMethod = method{"inverse", func(t tuned) code {
     s->before = in->x;
     return u;
 `,
-		roundings: 3, magnitude: func(p peaks) float64 { return (2*alpha - 1) * p.x },
+		roundings: 3, terms: peaks{x: 2*alpha - 1},
 		reason: "constant, product and difference of two terms that nearly cancel",
 	}
 	c.real("ALPHA", alpha, "alpha = 1 + tau/dt")

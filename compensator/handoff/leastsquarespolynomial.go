@@ -44,7 +44,7 @@ func (c *code) fixedFit(fit compensator.Fit, points int) {
 	c.start += "    (void)y;\n"
 	c.prime = "    (void)u;\n" + pushTwice
 	c.command = pushTwice + "    return dot(weight, &s->past[s->head + 1ul - POINTS], POINTS);\n"
-	c.roundings, c.magnitude = dotRoundings(points), func(p peaks) float64 { return sum * p.x }
+	c.roundings, c.terms = dotRoundings(points), peaks{x: sum}
 	c.reason = "constant, product and one sum more than an eighth of the terms, and ten"
 }
 
@@ -55,6 +55,7 @@ func dotRoundings(points int) int { return points/8 + 12 }
 
 func (c *code) adaptiveFit(comp *compensator.LeastSquaresPolynomial, fit compensator.Fit, t tuned) {
 	order := orderOf(t.values)
+	c.cautions = learns
 	amplitude := t.values.Text("adapt") == "delay-and-amplitude"
 	c.whole("ORDER", order, "N")
 	c.double("RATE", 1/t.tick, "ticks a second")
@@ -117,6 +118,6 @@ func (c *code) adaptiveFit(comp *compensator.LeastSquaresPolynomial, fit compens
 		sum += math.Abs(p) * row
 	}
 	sum *= fit.Amplitude.High
-	c.roundings, c.magnitude = dotRoundings(len(fit.Weights))+order+5, func(p peaks) float64 { return sum * p.x }
+	c.roundings, c.terms = dotRoundings(len(fit.Weights))+order+5, peaks{x: sum}
 	c.reason = "constants, products and one sum more than an eighth of the points and for each order; delay and amplitude are double in either build"
 }

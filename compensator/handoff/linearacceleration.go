@@ -19,7 +19,7 @@ var linearAccelerationMethod = method{"linear-acceleration", func(t tuned) code 
     s->past[s->head] = in->a;
     return in->x + DELAY * in->v + (NOW * in->a - BEFORE * history_at(s->past, s->head, AGO));
 `,
-		roundings: 12, magnitude: func(p peaks) float64 { return p.x + a1*p.v + (a2+b2)*p.a },
+		roundings: 12, terms: peaks{x: 1, v: a1, a: a2 + b2},
 		reason: "constant, product, seven of the interpolation and three sums",
 	}
 	c.real("DELAY", a1, "tau, s")

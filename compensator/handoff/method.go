@@ -71,11 +71,18 @@ type code struct {
 	cautions []string
 
 	// The float build's command differs from the double one's by at most so
-	// many roundings of a sum of terms of so many m, and why.
+	// many roundings, each of 2^-24 of the sum of so much of target, velocity,
+	// acceleration and command; and why. A term of a sum is rounded as a
+	// constant, as a product and in every sum that it goes through, each time by
+	// no more than 2^-24 of the terms' magnitudes.
 	roundings int
-	magnitude func(peaks) float64
+	terms     peaks
 	reason    string
 }
+
+// learns cautions of methods that adapt.
+var learns = []string{"This method learns from what is measured, and the guard cannot tell a sensor that drifts from an actuator that is late:" +
+	" keep the bounds as narrow as the test allows, and watch what it has learned, in the members called adapted."}
 
 // member is one member of a state struct; count is 0 for a plain one.
 type member struct {
@@ -101,7 +108,8 @@ func (c *code) bytes() int {
 }
 
 func (c *code) floatBound(p peaks) float64 {
-	return float64(c.roundings) * unitRoundoff * c.magnitude(p)
+	t := c.terms
+	return float64(c.roundings) * unitRoundoff * (t.x*p.x + t.v*p.v + t.a*p.a + t.u*p.u)
 }
 
 // real adds a constant of the build's type.

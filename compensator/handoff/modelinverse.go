@@ -1,8 +1,6 @@
 package handoff
 
 import (
-	"math"
-
 	"antelag/scenarios/kind"
 )
 
@@ -21,9 +19,7 @@ var modelInverseMethod = method{"model-inverse", func(t tuned) code {
     s->before = in->a;
     return A0 * in->x + A1 * in->v + A2 * in->a + JERK * change;
 `,
-		roundings: 6, magnitude: func(p peaks) float64 {
-			return a[0]*p.x + a[1]*p.v + (a[2]+2*math.Abs(jerk))*p.a
-		},
+		roundings: 6, terms: peaks{x: a[0], v: a[1], a: a[2] + 2*jerk},
 		reason: "constant, difference, product and three sums",
 	}
 	c.real("A0", a[0], "1/g")

@@ -52,7 +52,7 @@ func identifier(name string) string {
 // letters are the symbols of equations and units in ASCII, because compilers
 // and editors of laboratories are old.
 var letters = strings.NewReplacer(
-	"τ", "tau", "α", "alpha", "β", "beta", "κ", "kappa", "λ", "lambda", "ω", "omega", "ζ", "zeta", "ε", "eps",
+	"iτ", "i*tau", "τ", "tau", "α", "alpha", "β", "beta", "κ", "kappa", "λ", "lambda", "ω", "omega", "ζ", "zeta", "ε", "eps",
 	"Σ", "sum", "∫", "integral of ", "·", "*", "−", "-", "–", "-", "—", "-", "×", "x", "≤", "<=", "≥", ">=", "±", "+-", "√", "sqrt",
 	"₀", "0", "₁", "1", "₂", "2", "₃", "3", "ᵢ", "_i", "⁻¹", "^-1", "⁻²", "^-2", "²", "^2", "³", "^3", "ⁿ", "^n", "µ", "u",
 	"Ÿ", "Y''", "Ẏ", "Y'", "…", "..", "é", "e", "ü", "u", "ö", "o", "ä", "a")

@@ -7,7 +7,7 @@ var noneMethod = method{"none", func(tuned) code {
 		prime:   "    (void)s; (void)in; (void)u;\n",
 		command: "    (void)s;\n    return in->x;\n",
 
-		roundings: 0, magnitude: func(p peaks) float64 { return p.x },
+		roundings: 0, terms: peaks{x: 1},
 		reason: "nothing is computed",
 	}
 }}

@@ -26,12 +26,12 @@ static double clamp(double v, double lo, double hi)
 
 const followPart = `
 /* Moves a parameter p by one tick of dp/dt = kappa w eps, eps = e q/(q^2 + q0^2)
- * bounded to +-(hi - lo), and bounds p to lo .. hi; step is kappa dt, floor
+ * bounded to +-(hi - lo), and bounds p to lo .. hi; step is kappa dt, q02
  * q0^2. */
-static void follow(double *p, double e, double q, double w, double step, double floor, double lo, double hi)
+static void follow(double *p, double e, double q, double w, double step, double q02, double lo, double hi)
 {
     const double reach = hi - lo;
-    const double off = clamp(e * q / (q * q + floor), -reach, reach);
+    const double off = clamp(e * q / (q * q + q02), -reach, reach);
     if (off != off) return; /* beyond all numbers: nothing can be learned */
     *p = clamp(*p + step * w * off, lo, hi);
 }

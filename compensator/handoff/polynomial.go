@@ -28,7 +28,7 @@ var polynomialMethod = method{"polynomial", func(t tuned) code {
 	c.start = fillRing + "    (void)y;\n"
 	c.prime = "    (void)u;\n" + pushRing
 	c.command = "    real even = NOW * in->x, odd = 0;\n" + pushRing + lines.String() + "    return even + odd;\n"
-	c.roundings, c.magnitude = len(past)/2+5, func(p peaks) float64 { return sum * p.x }
+	c.roundings, c.terms = len(past)/2+5, peaks{x: sum}
 	c.reason = "constant, product and one sum more than half the terms"
 	return c
 }}

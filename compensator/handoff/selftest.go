@@ -43,7 +43,7 @@ func (u *unit) selfTestEntry() string {
 		return literal(v)
 	}
 	l := u.Limits
-	return fmt.Sprintf("    {%q, %d, %s, %s, {%s, %s, %s, %s}, @do_reset, @do_prime, @do_step, @do_flags, @do_time, 0, 0.0},\n",
+	return fmt.Sprintf("    {%q, %d, %s, %s, {%s, %s, %s, %s}, @do_init, @do_reset, @do_prime, @do_step, @do_flags, @do_time, 0, 0.0},\n",
 		u.ident, len(u.rows), literal(u.report.DoubleBound), literal(u.report.FloatBound),
 		limit(l.stroke()), limit(l.Velocity*u.tick), limit(l.Force), limit(l.Error))
 }
@@ -60,6 +60,7 @@ struct channel {
     long rows;                       /* in the file */
     double allowed, allowed_float;   /* largest difference, m */
     struct { double stroke, travel, force, error; } limit; /* 0: none */
+    double (*init)(void);
     double (*reset)(double x, double y);
     void (*prime)(const double *c);
     double (*step)(const double *c);
@@ -84,6 +85,13 @@ static @input @input_of(const double *c)
     in.y = (@real)c[Y];
     in.r = (@real)c[R];
     return in;
+}
+
+static double @do_init(void)
+{
+    memset(&@s, 0xff, sizeof @s); /* whatever was there before */
+    @init(&@s);
+    return (double)@s.command;
 }
 
 static double @do_reset(double x, double y)
@@ -174,7 +182,7 @@ static int read_row(char *line, struct channel **c, char *call, double *v)
         v[i] = strtod(word, &end);
         if (end == word || *end != '\0') return 0;
     }
-    return rest == 0 && (*call == 'r' || *call == 'p' || *call == 's');
+    return rest == 0 && (*call == 'i' || *call == 'r' || *call == 'p' || *call == 's');
 }
 
 static void compare(struct channel *c, double got, double want)
@@ -198,6 +206,7 @@ static int run(FILE *f)
             return 0;
         }
         c->seen++;
+        if (call == 'i') compare(c, c->init(), v[U]);
         if (call == 'r') compare(c, c->reset(v[X], v[Y]), v[U]);
         if (call == 'p') c->prime(v);
         if (call == 's') compare(c, c->step(v), v[U]);
@@ -227,10 +236,25 @@ static int stops(const struct channel *c, int at, double bad, unsigned flag, con
     return 0;
 }
 
+/* Gives a channel what asks for a command that is none, if the method minds it:
+ * it must be held, or be within the limits. */
+static int bounds(const struct channel *c, int at, double large)
+{
+    double v[COLUMNS] = {0.0}, held, u;
+    held = c->reset(0.0, 0.0);
+    v[at] = large;
+    u = c->step(v);
+    if (c->flags() != 0) return u != held ? trouble(c, "passes a command and raises a flag") : 0;
+    if (!(fabs(u) <= c->limit.stroke)) return trouble(c, "passes a command beyond the stroke");
+    if (c->limit.travel > 0.0 && !(fabs(u - held) <= 1.000001 * c->limit.travel)) return trouble(c, "passes a jump of the command");
+    return 0;
+}
+
 /* Shows the guard of a channel everything that it must stop. */
 static int guard(const struct channel *c)
 {
-    static const double none[3] = {NAN, INFINITY, -INFINITY};
+    static const double none[3] = {(double)NAN, (double)INFINITY, (double)-INFINITY};
+    const double no_number[COLUMNS] = {0.0, 0.0, 0.0, (double)NAN};
     int bad = 0, i, at;
     for (at = X; at <= R; at++)
         for (i = 0; i < 3; i++) bad += stops(c, at, none[i], NOT_FINITE, "passes what is no number");
@@ -243,7 +267,11 @@ static int guard(const struct channel *c)
         if (c->limit.travel > 0.0 && c->limit.travel < c->limit.stroke)
             bad += stops(c, X, 1.001 * i * c->limit.travel, JUMP, "passes a jump");
     }
-    (void)c->reset(NAN, 0.0);
+    for (at = X; at <= A; at++) bad += bounds(c, at, 1e30) + bounds(c, at, 1.0) + bounds(c, at, 0.99 * c->limit.travel);
+    (void)c->reset(0.0, 0.0);
+    c->prime(no_number);
+    if (c->flags() != NOT_FINITE) bad += trouble(c, "is primed with what is no number");
+    (void)c->reset((double)NAN, 0.0);
     if (c->flags() == 0) bad += trouble(c, "resets to what is no number");
     (void)c->reset(0.0, 0.0);
     if (c->flags() != 0) bad += trouble(c, "does not reset");
@@ -286,7 +314,6 @@ int main(int count, char **args)
         fprintf(stderr, count > 1 ? "selftest: the vectors cannot be read\n" : "usage: selftest vectors.csv [STEPS]\n");
         return 2;
     }
-    for (i = 0; i < CHANNELS; i++) (void)channels[i].reset(0.0, 0.0);
     if (count > 2) {
         const long steps = strtol(args[2], 0, 10);
         i = steps > 0 ? time_steps(f, steps) : 2;

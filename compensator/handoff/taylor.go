@@ -1,7 +1,5 @@
 package handoff
 
-import "math"
-
 // taylorMethod: u = x + τ·v + τ²/2·a.
 var taylorMethod = method{"taylor", func(t tuned) code {
 	a1, a2 := t.coefficient("a1"), t.coefficient("a2")
@@ -10,7 +8,7 @@ var taylorMethod = method{"taylor", func(t tuned) code {
 		prime:   "    (void)s; (void)in; (void)u;\n",
 		command: "    (void)s;\n    return in->x + DELAY * in->v + HALF * in->a;\n",
 
-		roundings: 4, magnitude: func(p peaks) float64 { return p.x + math.Abs(a1)*p.v + math.Abs(a2)*p.a },
+		roundings: 4, terms: peaks{x: 1, v: a1, a: a2},
 		reason: "constant, product and two sums",
 	}
 	c.real("DELAY", a1, "tau, s")

@@ -14,12 +14,13 @@ import (
 type call int
 
 const (
-	resetCall call = iota // target and measured were x and y for ever
+	initCall  call = iota // at rest at 0
+	resetCall             // target and measured were x and y for ever
 	primeCall             // the input, and what another method commanded
 	stepCall
 )
 
-var callWords = [...]string{"reset", "prime", "step"} // by call
+var callWords = [...]string{"init", "reset", "prime", "step"} // by call
 
 // row is one call with what goes in, and the command that stands after it.
 type row struct {
@@ -52,10 +53,13 @@ func steps(rows []row) int {
 	return n
 }
 
-// The vectors are three tests one after another: from rest at zero; after a
-// reset to rest elsewhere; and taken over from another method. Each is as long
-// as three times the method's memory, within these bounds, ticks.
-const fewestTicks, mostTicks = 1500, 6000
+// The vectors are three tests one after another: a structure's motion from rest
+// at zero; a sine, which tells least squares little, about rest elsewhere, with
+// the actuator rather early; and the first again, taken over in its middle from
+// another method. Each is as long
+// as three times the method's memory, or this time, s, whichever is longer, but
+// within these bounds, ticks.
+const fewestTicks, mostTicks, testTime = 1500, 6000, 2.0
 
 // amplitude is that of the target where no limit stands against it, m.
 const amplitude = 20e-3
@@ -91,6 +95,14 @@ func (u *unit) vectors(seed uint64) ([]row, error) {
 	return nil, fmt.Errorf("no input was found that stays within the limits of the channel: %v", u.Limits)
 }
 
+// testKind is one of the tests: where it rests, how far off the sensor then is,
+// and whether it is a steady sine under an actuator that answers early, all the
+// time alike, or a motion under one that does not know its own mind.
+type testKind struct {
+	rest, offset float64
+	steady       bool
+}
+
 // generator makes one try at the vectors.
 type generator struct {
 	unit  *unit
@@ -100,6 +112,7 @@ type generator struct {
 	base  float64 // frequency of the slowest part, Hz
 	late  float64 // largest lateness of the measured displacement, s
 	phase [4]float64
+	test  testKind
 	rows  []row
 	worst float64 // largest part of a limit
 	x, u  float64 // of the tick before
@@ -107,11 +120,11 @@ type generator struct {
 
 func newGenerator(u *unit, seed uint64, scale float64) *generator {
 	g := &generator{unit: u, rng: rand.New(rand.NewPCG(seed, 0x616e74656c6167)), scale: scale}
-	g.n = min(max(fewestTicks, 3*u.code.memory()), mostTicks)
+	g.n = min(max(fewestTicks, 3*u.code.memory(), int(testTime/u.tick)), mostTicks)
 	length := float64(g.n) * u.tick
 	// A structure's motion, but some cycles in any case, and no fewer ticks a
 	// cycle than a test has.
-	g.base = min(max(0.7, 3/length), 1/(100*u.tick))
+	g.base = min(max(0.7, 2/length), 1/(100*u.tick))
 	g.late = 20e-3
 	if u.Values.Has("delay") {
 		g.late = max(g.late, 2*u.Values.Num("delay"))
@@ -138,39 +151,48 @@ func float(v float64) float64 { return float64(float32(v)) }
 // sines is the motion without its envelope, of amplitude about 1; s is time over
 // the period of the slowest part.
 func (g *generator) sines(s float64) float64 {
+	if g.test.steady {
+		return 0.6 * math.Sin(2*math.Pi*3*s+g.phase[0])
+	}
 	sum := 0.0
-	for i, part := range [4]struct{ amplitude, frequency float64 }{{0.6, 1}, {0.25, 2.7}, {0.12, 4.4}, {0.03, 13}} {
+	for i, part := range [4]struct{ amplitude, frequency float64 }{{0.6, 1}, {0.25, 2.7}, {0.12, 4.4}, {0.03, 9}} {
 		sum += part.amplitude * math.Sin(2*math.Pi*part.frequency*s+g.phase[i])
 	}
 	return sum
 }
 
-// envelope lets the motion begin and end at rest, and rest for a while within; p
-// is the part of the test that is over.
-func envelope(p float64) float64 {
+// envelope lets the motion begin and end at rest, and rest for a while within,
+// unless it is steady; p is the part of the test that is over.
+func (g *generator) envelope(p float64) float64 {
 	smooth := func(from, to float64) float64 {
 		s := min(max((p-from)/(to-from), 0), 1)
 		return s * s * s * (10 - 15*s + 6*s*s)
 	}
-	return smooth(0, 0.2) - 0.85*smooth(0.4, 0.5) + 0.85*smooth(0.55, 0.65) - smooth(0.85, 0.95)
+	e := smooth(0, 0.2) - smooth(0.85, 0.95)
+	if !g.test.steady {
+		e += smooth(0.55, 0.65) - smooth(0.4, 0.5)
+	}
+	return e
 }
 
 // target is the target at a time since the beginning of a test, ticks.
-func (g *generator) target(at, rest float64) float64 {
-	return rest + g.scale*amplitude*envelope(at/float64(g.n))*g.sines(at*g.unit.tick*g.base)
+func (g *generator) target(at float64) float64 {
+	return g.test.rest + g.scale*amplitude*g.envelope(at/float64(g.n))*g.sines(at*g.unit.tick*g.base)
 }
 
-// input is the input of tick k of a test that began at rest: the structure's
-// motion with the noise of an integration, and an actuator that answers
+// input is the input of tick k of a test: the structure's motion with the noise of an integration, and an actuator that answers
 // sometimes early, sometimes late, sometimes weak.
-func (g *generator) input(k int, rest, offset float64) compensator.Input {
+func (g *generator) input(k int) compensator.Input {
 	noise := func(size float64) float64 { return g.scale * size * g.rng.NormFloat64() }
 	tick, at := g.unit.tick, float64(k)
-	before, now, after := g.target(at, rest), g.target(at+1, rest), g.target(at+2, rest)
+	before, now, after := g.target(at), g.target(at+1), g.target(at+2)
 	slow := 2 * math.Pi * at * tick * g.base
-	lateness := g.late * (0.5 + 0.6*math.Sin(0.37*slow))
-	gain := 1 + 0.15*math.Sin(0.23*slow+1)
-	y := rest + offset + gain*(g.target(at-lateness/tick, rest)-rest)
+	lateness, gain := -0.4*g.late, 0.95
+	if !g.test.steady {
+		lateness = g.late * (0.5 + 0.6*math.Sin(0.37*slow))
+		gain = 1 + 0.15*math.Sin(0.23*slow+1)
+	}
+	y := g.test.rest + g.test.offset + gain*(g.target(at-lateness/tick)-g.test.rest)
 	force := min(g.unit.Limits.Force, 1e5)
 	return compensator.Input{
 		X: float(now + noise(1e-7)),
@@ -183,40 +205,43 @@ func (g *generator) input(k int, rest, offset float64) compensator.Input {
 
 // run makes the rows and returns the largest part of a limit that they take up.
 func (g *generator) run(comp, other compensator.Compensator) float64 {
-	away, offset := float(0.3*g.scale*amplitude), float(-0.02*g.scale*amplitude)
-	g.reset(comp, 0, 0)
-	g.steps(comp, 0, 0, 0)
-	g.reset(comp, away, float(away+offset))
-	g.steps(comp, away, offset, 0)
+	away := float(0.3 * g.scale * amplitude)
+	g.test = testKind{}
+	g.start(comp, initCall)
+	g.steps(comp, 0)
+	g.test = testKind{away, float(-0.02 * g.scale * amplitude), true}
+	g.start(comp, resetCall)
+	g.steps(comp, 0)
 	// Taken over where the motion rests: a method that has learned and one that
 	// has not do not command the same.
-	const half = 0.52
-	g.reset(comp, 0, 0)
+	const half = 0.54
+	g.test = testKind{}
+	g.start(comp, resetCall)
 	other.Start(0, 0)
 	from := int(half * float64(g.n))
 	for k := range from {
-		in := g.input(k, 0, 0)
+		in := g.input(k)
 		u := float(other.Command(in))
 		comp.Prime(in, u)
 		g.add(row{primeCall, in, u})
 	}
-	g.steps(comp, 0, 0, from)
+	g.steps(comp, from)
 	return g.worst
 }
 
-// reset is what the C does: at rest, and commanded what keeps it there.
-func (g *generator) reset(comp compensator.Compensator, x, y float64) {
-	in := compensator.Input{X: x, Y: y}
-	comp.Start(x, y)
+// start is what init and reset do: at rest, and commanded what keeps it there.
+func (g *generator) start(comp compensator.Compensator, how call) {
+	in := compensator.Input{X: g.test.rest, Y: float(g.test.rest + g.test.offset)}
+	comp.Start(in.X, in.Y)
 	u := comp.Command(in)
-	comp.Start(x, y)
-	g.x, g.u = x, u
-	g.add(row{resetCall, in, u})
+	comp.Start(in.X, in.Y)
+	g.x, g.u = in.X, u
+	g.add(row{how, in, u})
 }
 
-func (g *generator) steps(comp compensator.Compensator, rest, offset float64, from int) {
+func (g *generator) steps(comp compensator.Compensator, from int) {
 	for k := from; k < g.n; k++ {
-		in := g.input(k, rest, offset)
+		in := g.input(k)
 		g.add(row{stepCall, in, comp.Command(in)})
 	}
 }

@@ -24,12 +24,13 @@ func Write(ctx context.Context, dir string, files []File, force bool) (err error
 	}
 	aside, err := os.MkdirTemp(dir, ".handoff-")
 	if err != nil {
-		return errors.Join(err, unmake(made))
+		unmake(made)
+		return naming(err, dir)
 	}
 	defer func() {
 		os.RemoveAll(aside) //nolint:errcheck // what is left of it is empty or beside the point
 		if err != nil {
-			unmake(made) //nolint:errcheck // the first error tells
+			unmake(made)
 		}
 	}()
 	for _, f := range files {
@@ -79,20 +80,18 @@ func makeDir(dir string) (made []string, err error) {
 		made = append(made, d)
 	}
 	if err := os.MkdirAll(dir, 0o755); err != nil {
-		unmake(made) //nolint:errcheck // what could not be made cannot be taken away
+		unmake(made)
 		return nil, err
 	}
 	return made, nil
 }
 
-// unmake takes directories away that nothing is in.
-func unmake(dirs []string) error {
+// unmake takes away directories that were made, as far as they were and nothing is
+// in them.
+func unmake(dirs []string) {
 	for _, d := range dirs {
-		if err := os.Remove(d); err != nil {
-			return err
-		}
+		os.Remove(d) //nolint:errcheck // what is not there, or not empty, is left alone
 	}
-	return nil
 }
 
 func writeFile(path string, data []byte) error {

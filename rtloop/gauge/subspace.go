@@ -83,3 +83,20 @@ func (t *Tracking) Subspace() Ellipse {
 	q.Delay = q.Phase / omega
 	return q
 }
+
+// resting is the share of the peak target below which a motion says nothing of
+// synchronization: what is left of it is noise of the sensors and the last
+// ringing. A choice of ours.
+const resting = 0.005
+
+// AtRest reports whether the target has moved so little over the trailing
+// window, against its peak so far, that the subspace says nothing: amplitude
+// √(2σ_xx) below 0.5 % of the peak.
+func (t *Tracking) AtRest() bool { return t.AtRestFor(t.peakTarget) }
+
+// AtRestFor is AtRest against a peak, m, that is known otherwise.
+func (t *Tracking) AtRestFor(peak float64) bool {
+	e := t.Subspace()
+	sin, cos := math.Sincos(e.Tilt) // NaN for a point, which has no axes
+	return !(math.Hypot(e.Major*cos, e.Minor*sin) >= resting*peak)
+}

@@ -2,8 +2,10 @@ package runlog
 
 import (
 	"bytes"
+	"math"
 	"os"
 	"path/filepath"
+	"strconv"
 	"testing"
 )
 
@@ -41,4 +43,33 @@ func BenchmarkRead(b *testing.B) {
 			}
 		})
 	}
+}
+
+// BenchmarkNumber reads numbers as logs hold them, here and by strconv.
+func BenchmarkNumber(b *testing.B) {
+	var texts [][]byte
+	size := 0
+	for k := range 1024 {
+		t := float64(k) / 2048
+		for _, v := range []float64{t, 0.0123 * math.Sin(7*t), 1e5 * math.Cos(7*t)} {
+			texts = append(texts, strconv.AppendFloat(nil, v, 'g', -1, 64))
+			size += len(texts[len(texts)-1])
+		}
+	}
+	b.Run("scan", func(b *testing.B) {
+		b.SetBytes(int64(size))
+		for b.Loop() {
+			for _, text := range texts {
+				scan(text, '.')
+			}
+		}
+	})
+	b.Run("strconv", func(b *testing.B) {
+		b.SetBytes(int64(size))
+		for b.Loop() {
+			for _, text := range texts {
+				strconv.ParseFloat(string(text), 64) //nolint:errcheck // FormatFloat wrote it
+			}
+		}
+	})
 }

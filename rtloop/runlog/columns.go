@@ -78,6 +78,9 @@ type chosen struct {
 // their headings.
 func (l *layout) choose(o *Options) (*chosen, error) {
 	c := &chosen{time: -1, margin: -1}
+	if _, mapped := o.Map.find("time"); mapped && o.Rate != 0 {
+		return nil, fmt.Errorf("--map time=… and --rate both say when rows were; give one of them")
+	}
 	if o.Rate == 0 {
 		if err := c.chooseTime(l, o); err != nil {
 			return nil, err
@@ -117,7 +120,11 @@ func (c *chosen) chooseTime(l *layout, o *Options) error {
 		}
 	}
 	if at < 0 {
-		return fmt.Errorf("%d: no column is headed time; say which one it is by --map time=…, or give --rate; %s", l.first, l.list())
+		how := "which one it is by --map time=…"
+		if len(o.Map.entries) == 0 {
+			how = "which column is which by --map time=…,target=…,measured=…"
+		}
+		return fmt.Errorf("%d: no column is headed time; say %s, or give --rate; %s", l.first, how, l.list())
 	}
 	c.time = len(c.columns)
 	return c.add(l, o, column{at: at, channel: -1, what: "time"}, quantity.Time)
@@ -184,11 +191,9 @@ func (c *chosen) addRole(l *layout, o *Options, channel string, r Role, at int) 
 // names. Time is in seconds where nobody says otherwise; for lengths and forces
 // there is no such custom, and a wrong guess would be off by a thousand.
 func (c *chosen) add(l *layout, o *Options, col column, dim quantity.Dim) error {
-	channel, role, _ := strings.Cut(col.what, ".")
+	channel, role := "", col.what
 	if i := strings.LastIndexByte(col.what, '.'); i >= 0 {
 		channel, role = col.what[:i], col.what[i+1:]
-	} else {
-		channel, role = "", col.what
 	}
 	heading, has := l.unitOf(col.at, dim)
 	given, asked := o.Units.of(channel, role, dim)

@@ -22,6 +22,7 @@ type grid struct {
 	step      float64
 	tolerance float64 // s
 	most      int     // instants that are bridged
+	gapped    float64 // steps between two rows from which on there is one missing
 	counted   bool    // rows are counted, there are no stamps
 
 	start float64 // time of the first sample
@@ -117,7 +118,7 @@ func (r *Reader) fillUpTo(t float64) error {
 		g.passed++
 	}
 	g.offMost = max(g.offMost, math.Abs(math.Remainder(t-g.due, g.step)))
-	if t-g.at > 1.5*g.step+g.tolerance {
+	if t-g.at > g.gapped*g.step+g.tolerance {
 		g.gap(t, int(n), r.rowLine)
 	} else {
 		g.strides = 0

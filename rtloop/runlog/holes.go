@@ -30,8 +30,7 @@ func (h *holes) prepare(c *chosen) {
 	h.missing, h.firstMissing = make([]int64, n), make([]int, n)
 	h.lost = -1
 	for i := range n {
-		h.columns[i] = make([]float64, 2*blockSize)
-		h.taken[i] = make([]float64, blockSize)
+		h.columns[i] = make([]float64, 256) // grows as there is need
 		h.loose[i] = c.columns[i].loose || i == c.time
 		h.open[i] = -1
 	}
@@ -139,6 +138,9 @@ func (h *holes) take(n int) {
 	h.first += int64(h.out)
 	h.out = n
 	for i, c := range h.columns {
+		if cap(h.taken[i]) < n {
+			h.taken[i] = make([]float64, n)
+		}
 		h.taken[i] = h.taken[i][:n]
 		copy(h.taken[i], c[:n])
 		h.before[i] = c[n-1]

@@ -11,7 +11,7 @@ import (
 // layout is how a table is written, as its first lines show it.
 type layout struct {
 	separator byte // ' ' stands for any run of blanks and tabs
-	mark      byte // decimal mark beside the point; 0: none
+	mark      byte // decimal mark beside the point; a point: none
 	end       byte // of lines: '\n', or '\r' alone
 	quoted    bool // cells may stand in quotes
 	columns   int
@@ -32,8 +32,8 @@ type line struct {
 
 // findLayout finds out how the table is written of which head is the beginning;
 // whole says that there is no more of it. Before the rows there may be anything:
-// the rows are the longest run of lines that hold mostly numbers, in equally many
-// columns.
+// the rows are those lines that hold mostly numbers, in as many columns as in the
+// longest run of such lines.
 func findLayout(head []byte, whole bool) (layout, error) {
 	l := layout{end: '\n'}
 	if bytes.IndexByte(head, '\n') < 0 && bytes.IndexByte(head, '\r') >= 0 {
@@ -50,13 +50,43 @@ func findLayout(head []byte, whole bool) (layout, error) {
 	if best.rows == 0 {
 		return l, noRows(lines)
 	}
-	if l.separator != ',' {
-		l.mark = ','
+	l.mark = decimalMark(l.separator)
+	l.columns = best.columns
+	first, err := firstRow(lines, l.separator, best)
+	if err != nil {
+		return l, err
 	}
-	at := lines[best.first]
-	l.columns, l.first, l.at = best.columns, at.number, at.at
+	at := lines[first]
+	l.first, l.at = at.number, at.at
 	l.quoted = bytes.IndexByte(head[at.at:], '"') >= 0
-	return l, l.heading(lines[:best.first])
+	return l, l.heading(lines[:first])
+}
+
+// firstRow finds the first line of the width of the longest run. Before it there
+// may be single lines of numbers, but no other table.
+func firstRow(lines []line, sep byte, best run) (int, error) {
+	const table = 3 // rows are no accident
+	other := run{}
+	for i, l := range lines[:best.first] {
+		if l.idle {
+			continue
+		}
+		n, columns := numbers(l.text, sep)
+		switch {
+		case n <= 0:
+			other = run{}
+			continue
+		case columns == best.columns:
+			return i, nil
+		case columns != other.columns:
+			other = run{first: i, columns: columns}
+		}
+		if other.rows++; other.rows == table {
+			return 0, fmt.Errorf("%d: %s here, but %d from line %d on; one table must have the same columns throughout", lines[other.first].number,
+				plural(int64(columns), "column", "columns"), best.columns, lines[best.first].number)
+		}
+	}
+	return best.first, nil
 }
 
 func noRows(lines []line) error {
@@ -121,20 +151,16 @@ func longestRun(lines []line, sep byte) run {
 		if l.idle {
 			continue
 		}
-		cells := split(l.text, sep, nil)
-		numbers := 0 // more than other texts
-		for _, c := range cells {
-			numbers += counts(c, sep)
-		}
-		if numbers <= 0 {
+		n, columns := numbers(l.text, sep)
+		if n <= 0 {
 			now = run{}
 			continue
 		}
-		if now.rows == 0 || now.columns != len(cells) {
-			now = run{first: i, columns: len(cells)}
+		if now.rows == 0 || now.columns != columns {
+			now = run{first: i, columns: columns}
 		}
 		now.rows++
-		now.score += numbers
+		now.score += n
 		if now.score > best.score {
 			best = now
 		}
@@ -142,19 +168,34 @@ func longestRun(lines []line, sep byte) run {
 	return best
 }
 
+// numbers returns how many more numbers than other texts there are in a line, and
+// how many columns.
+func numbers(text []byte, sep byte) (n, columns int) {
+	cells := split(text, sep, nil)
+	for _, c := range cells {
+		n += counts(c, sep)
+	}
+	return n, len(cells)
+}
+
 // counts tells numbers, 1, from missing values, 0, and other texts, −1.
 func counts(cell []byte, sep byte) int {
-	var mark byte = ','
-	if sep == ',' {
-		mark = 0
-	}
-	switch v, err := value(cell, mark); {
+	switch v, err := value(cell, decimalMark(sep)); {
 	case err != nil:
 		return -1
 	case v != v:
 		return 0
 	}
 	return 1
+}
+
+// decimalMark is the mark that may stand for a decimal point: a comma where it
+// does not separate.
+func decimalMark(sep byte) byte {
+	if sep == ',' {
+		return '.'
+	}
+	return ','
 }
 
 // split appends the cells of a line. Separators inside quotes are none.

@@ -25,6 +25,10 @@ func (r *Reader) sayLayout() {
 	if n := r.layout.skipped; n > 0 {
 		r.note("%s before line %d %s no part of the table and %s skipped", lines(n), r.layout.first, isAre(n), wasWere(n))
 	}
+	const slow = 0.1 // s from row to row, that no test is logged at
+	if !r.grid.counted && r.grid.step >= slow {
+		r.note("rows come every %s; if the time column counts rows, or is in another unit, say it by --rate or --units time=ms", ms(r.grid.step))
+	}
 	if r.grid.counted {
 		for i, h := range r.layout.names {
 			if name, _, _ := namedUnit(h, quantity.Time); strings.EqualFold(name, "time") {
@@ -60,7 +64,7 @@ func (r *Reader) sayMended() {
 	}
 	for i, n := range h.missing {
 		if n > 0 {
-			r.note("%s in %s (first at line %d): bridged by straight lines", numbers(n), r.chosen.columns[i].what, h.firstMissing[i])
+			r.note("%s in %s (first at line %d): bridged by straight lines", absent(n), r.chosen.columns[i].what, h.firstMissing[i])
 		}
 	}
 	if h.cut > 0 {
@@ -95,7 +99,7 @@ func (c *chosen) list() string {
 
 func lines(n int) string  { return plural(int64(n), "line", "lines") }
 func rows(n int64) string { return plural(n, "row", "rows") }
-func numbers(n int64) string {
+func absent(n int64) string {
 	return plural(n, "number is missing", "numbers are missing")
 }
 func have(n int64) string { return plural(n, "row has", "rows have") }

@@ -26,7 +26,7 @@ func TestScanEqualsStrconv(t *testing.T) {
 			t.Fatalf("%s: %d bytes read as %v (%x), strconv has %v (%x)", text, n, got, math.Float64bits(got), want, math.Float64bits(want))
 		}
 	}
-	for range 300000 {
+	for range 60000 {
 		bits := r.Uint64()
 		if v := math.Float64frombits(bits); !math.IsNaN(v) && !math.IsInf(v, 0) {
 			check(strconv.FormatFloat(v, 'g', -1, 64))
@@ -40,7 +40,7 @@ func TestScanEqualsStrconv(t *testing.T) {
 		half := (r.Uint64()>>11|1<<52)<<1 | 1 // 54 bits, the last one half a unit
 		check(strconv.FormatUint(half*5+uint64(r.IntN(3))-1, 10) + "e-1")
 	}
-	if taken < 1000000 {
+	if taken < 200000 {
 		t.Errorf("only %d of the numbers were read at once", taken)
 	}
 }
@@ -52,10 +52,10 @@ func TestScanTakesNumbersOnly(t *testing.T) {
 		v    float64
 		n    int
 	}{
-		{"1.5", ',', 1.5, 3}, {"1,5", ',', 1.5, 3}, {"1,5", 0, 1, 1}, {"-0", 0, math.Copysign(0, -1), 2}, {"+2.", 0, 2, 3}, {".5", 0, 0.5, 2},
-		{"1e3", 0, 1000, 3}, {"1E-3;", 0, 0.001, 4}, {"12 ", 0, 12, 2}, {"1.5.2", 0, 1.5, 3},
-		{"", 0, 0, 0}, {"-", 0, 0, 0}, {".", 0, 0, 0}, {"e5", 0, 0, 0}, {"1e", 0, 0, 0}, {"1e+", 0, 0, 0}, {"1e99999", 0, 0, 0}, {"NaN", 0, 0, 0},
-		{"12345678901234567890.5", 0, 0, 0}, {"0000000000000000000000001.5", 0, 1.5, 27}, {"0.000000000000000000000001", 0, 1e-24, 26},
+		{"1.5", ',', 1.5, 3}, {"1,5", ',', 1.5, 3}, {"1,5", '.', 1, 1}, {"-0", '.', math.Copysign(0, -1), 2}, {"+2.", '.', 2, 3}, {".5", '.', 0.5, 2},
+		{"1e3", '.', 1000, 3}, {"1E-3;", '.', 0.001, 4}, {"12 ", '.', 12, 2}, {"1.5.2", '.', 1.5, 3},
+		{"", '.', 0, 0}, {"-", '.', 0, 0}, {".", '.', 0, 0}, {"e5", '.', 0, 0}, {"1e", '.', 0, 0}, {"1e+", '.', 0, 0}, {"1e99999", '.', 0, 0}, {"NaN", '.', 0, 0},
+		{"12345678901234567890.5", '.', 0, 0}, {"0000000000000000000000001.5", '.', 1.5, 27}, {"0.000000000000000000000001", '.', 1e-24, 26},
 	} {
 		v, n := scan([]byte(c.text), c.mark)
 		if n != c.n || n > 0 && math.Float64bits(v) != math.Float64bits(c.v) {
@@ -69,7 +69,7 @@ func FuzzScan(f *testing.F) {
 		f.Add(s)
 	}
 	f.Fuzz(func(t *testing.T, text string) {
-		got, n := scan([]byte(text), 0)
+		got, n := scan([]byte(text), '.')
 		if n == 0 {
 			return
 		}

@@ -59,8 +59,10 @@ type Reader struct {
 	tail  badTail
 	block Block
 	err   error
-	ended bool
-	notes []string
+
+	expected int64
+	ended    bool
+	notes    []string
 }
 
 // Block is a stretch of a log: evenly spaced samples in SI. Its slices are
@@ -77,7 +79,8 @@ type Block struct {
 type Samples [roles][]float64
 
 const (
-	readSize   = 1 << 19 // what is read at once, and what the layout is found from, bytes
+	readSize   = 1 << 19 // what is read at once, bytes
+	headSize   = 1 << 17 // what the layout is found from, bytes
 	longest    = 1 << 20 // longest line, bytes
 	blockSize  = 4096    // samples of a block
 	headRows   = 4096    // rows from which the sampling is found
@@ -92,7 +95,11 @@ func Open(path string, o Options) (*Reader, error) {
 	if err != nil {
 		return nil, err
 	}
-	r := &Reader{path: path, source: s, buf: make([]byte, readSize)}
+	size := int64(readSize)
+	if s.size > 0 && !s.packed {
+		size = min(size, s.size+1) // the byte more shows the end
+	}
+	r := &Reader{path: path, source: s, buf: make([]byte, size)}
 	if err := r.open(&o); err != nil {
 		s.Close()
 		return nil, err
@@ -111,7 +118,11 @@ func (r *Reader) open(o *Options) error {
 		return fmt.Errorf("%s: is empty", r.path)
 	}
 	var err error
-	if r.layout, err = findLayout(r.buf[:r.end], r.over); err != nil {
+	head := min(r.end, headSize)
+	if r.layout, err = findLayout(r.buf[:head], r.over && head == r.end); err != nil && head < r.end {
+		r.layout, err = findLayout(r.buf[:r.end], r.over)
+	}
+	if err != nil {
 		return r.placed(err)
 	}
 	if r.chosen, err = r.layout.choose(o); err != nil {
@@ -120,6 +131,10 @@ func (r *Reader) open(o *Options) error {
 	r.prepare()
 	if err := r.findSampling(o); err != nil {
 		return err
+	}
+	rows := r.buf[r.pos:r.end]
+	if lines := bytes.Count(rows, []byte{r.layout.end}); lines > 0 && r.source.size > 0 && !r.source.packed {
+		r.expected = int64(float64(lines) / float64(len(rows)) * float64(max(r.source.size-int64(r.layout.at), 0)))
 	}
 	r.sayLayout()
 	return nil
@@ -206,6 +221,10 @@ func (r *Reader) HasMargin() bool { return r.chosen.margin >= 0 }
 
 // Size returns the bytes of the log where they are known beforehand, else 0.
 func (r *Reader) Size() int64 { return r.source.size }
+
+// Expected returns about how many samples there will be, as the first lines and the
+// size of the file have it; 0 where they do not.
+func (r *Reader) Expected() int64 { return r.expected }
 
 // Offset returns about how many bytes of the file have been read.
 func (r *Reader) Offset() int64 { return r.source.read }

@@ -184,10 +184,10 @@ func (r *Reader) parseSplit(text []byte) error {
 func (r *Reader) width(text []byte) error {
 	cells := split(text, r.layout.separator, nil)
 	n := len(cells)
-	if n == r.layout.columns+1 && len(bytes.TrimSpace(cells[n-1])) == 0 {
+	if n == r.layout.columns || n == r.layout.columns+1 && len(bytes.TrimSpace(cells[n-1])) == 0 {
 		return nil
 	}
-	return fmt.Errorf("%d columns found, where the rows above have %d", n, r.layout.columns)
+	return fmt.Errorf("%s found, where the rows above have %d", plural(int64(n), "column", "columns"), r.layout.columns)
 }
 
 // badCell names the column of a cell that is no number, unless the whole row is

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"math"
 	"slices"
+	"strconv"
 )
 
 // findSampling finds the step of the grid and how far from it rows may lie: from
@@ -14,7 +15,10 @@ func (r *Reader) findSampling(o *Options) error {
 	if o.Rate > 0 {
 		g.step, g.counted = 1/o.Rate, true
 	} else {
-		stamps := r.headStamps()
+		stamps, bad := r.headStamps()
+		if len(stamps) < fewestRows && bad != nil {
+			return bad
+		}
 		if len(stamps) < fewestRows {
 			return r.errorf(r.layout.first, "%d row with a time; a log has at least %d", len(stamps), fewestRows)
 		}
@@ -27,25 +31,31 @@ func (r *Reader) findSampling(o *Options) error {
 	return nil
 }
 
-// headStamps returns the times of the rows in the head, s.
-func (r *Reader) headStamps() []float64 {
+// headStamps returns the times of the rows in the head, s, and what was wrong with
+// the first line that is no row.
+func (r *Reader) headStamps() (out []float64, bad error) {
 	pos, line := r.pos, r.line
 	defer func() { r.pos, r.line = pos, line }()
-	var out []float64
 	for len(out) < headRows {
 		i := bytes.IndexByte(r.buf[r.pos:r.end], r.layout.end)
 		if i < 0 && !r.over || r.pos == r.end {
 			break
 		}
 		text, closed, err := r.nextLine()
-		if err != nil || idle(text) || r.parse(text, !closed) != nil {
+		if err != nil || idle(text) {
+			continue
+		}
+		if err := r.parse(text, !closed); err != nil {
+			if bad == nil {
+				bad = r.errorf(r.line, "%w", err)
+			}
 			continue
 		}
 		if t := r.row[r.chosen.time]; !nan(t) {
 			out = append(out, t)
 		}
 	}
-	return out
+	return out, bad
 }
 
 // fit finds step and tolerance from stamps, and reports whether there are any.
@@ -72,6 +82,16 @@ func (r *Reader) fit(stamps []float64) bool {
 	}
 	slices.Sort(steps)
 	median, least := steps[len(steps)/2], steps[0]
+	g.gapped = 1.5
+	even := 0
+	for _, d := range steps {
+		if math.Abs(d/median-math.Round(d/median)) < 0.1 {
+			even++
+		}
+	}
+	if even*5 < len(steps)*4 {
+		g.gapped = 2.5 // what is uneven has long steps without a row missing
+	}
 	coarse := still*20 > len(stamps)
 	number := make([]float64, 0, len(stamps))
 	times := make([]float64, 0, len(stamps))
@@ -82,7 +102,10 @@ func (r *Reader) fit(stamps []float64) bool {
 			if !(d > 0) {
 				continue
 			}
-			n = number[len(number)-1] + max(1, math.Round(d/median))
+			n = number[len(number)-1] + 1
+			if d > g.gapped*median {
+				n += math.Round(d/median) - 1
+			}
 		}
 		number, times = append(number, n), append(times, t)
 	}
@@ -144,23 +167,30 @@ func decimals(times []float64) float64 {
 	return 0
 }
 
-// round returns the roundest step within a relative distance: of a whole rate, or
-// of a step or rate with few digits; else the step itself.
+// round returns the roundest step within a relative distance: of few digits itself
+// or in its rate, of a rate that is a power of two, or a whole one; else the step.
 func round(step, within float64) float64 {
-	within = min(within, 1e-3)
-	near := func(v float64) bool { return v > 0 && math.Abs(v-step) <= within*step }
+	within = min(within, 1e-2)
 	rate := 1 / step
-	if v := 1 / math.Round(rate); near(v) {
-		return v
+	candidates := []float64{
+		figures(step, 1), 1 / figures(rate, 1), figures(step, 2), 1 / figures(rate, 2),
+		1 / math.Exp2(math.Round(math.Log2(rate))),
+		figures(step, 3), 1 / figures(rate, 3), 1 / math.Round(rate),
+		figures(step, 4), 1 / figures(rate, 4), figures(step, 5), 1 / figures(rate, 5),
 	}
-	for digits := 1.0; digits <= 1e3; digits *= 10 {
-		unit := math.Pow(10, math.Floor(math.Log10(step)))
-		if v := math.Round(step/unit*digits) / digits * unit; near(v) {
-			return v
-		}
-		if v := 1 / (math.Round(rate*digits) / digits); near(v) {
+	for _, v := range candidates {
+		if math.Abs(v-step) <= within*step {
 			return v
 		}
 	}
 	return step
+}
+
+// figures rounds v to so many significant digits.
+func figures(v float64, digits int) float64 {
+	out, err := strconv.ParseFloat(strconv.FormatFloat(v, 'e', digits-1, 64), 64)
+	if err != nil {
+		return math.NaN()
+	}
+	return out
 }

@@ -33,6 +33,8 @@ type source struct {
 	file *os.File
 	size int64 // bytes of the file, 0 where that is not known
 	read int64 // bytes of it that have been read
+
+	packed bool // the text is longer than the file, or shorter
 }
 
 // openSource opens a file and finds out what it is by how it begins.
@@ -69,6 +71,7 @@ func (s *source) recognize(path string) error {
 		if err != nil {
 			return fmt.Errorf("%s: begins like a gzip file but is none: %w", path, err)
 		}
+		s.packed = true
 		b = bufio.NewReaderSize(zipped, 1<<16)
 		if head, err = peek(b); err != nil {
 			return fmt.Errorf("%s: %w", path, err)
@@ -84,6 +87,7 @@ func (s *source) recognize(path string) error {
 	case bytes.HasPrefix(head, []byte("\xef\xbb\xbf")):
 		b.Discard(3) //nolint:errcheck // they have been peeked at
 	case bytes.HasPrefix(head, []byte{0xff, 0xfe}), bytes.HasPrefix(head, []byte{0xfe, 0xff}):
+		s.packed = true
 		s.Reader = transform.NewReader(b, unicode.UTF16(unicode.LittleEndian, unicode.ExpectBOM).NewDecoder())
 	case bytes.IndexByte(head, 0) >= 0:
 		return fmt.Errorf("%s: is a binary file (byte %d is zero), not text", path, bytes.IndexByte(head, 0)+1)

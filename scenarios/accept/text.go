@@ -119,16 +119,7 @@ type page struct {
 func (p *page) printf(format string, args ...any) { fmt.Fprintf(p, format, args...) }
 
 // word is the verdict in one word of constant width.
-func (p *page) word(pass bool) string {
-	word, code := "FAIL", "31;1"
-	if pass {
-		word, code = "PASS", "32;1"
-	}
-	if !p.colour {
-		return word
-	}
-	return "\x1b[" + code + "m" + word + "\x1b[0m"
-}
+func (p *page) word(pass bool) string { return Word(pass, p.colour) }
 
 // verdict is the word for a lane. One that completed without any limit to meet
 // has not passed anything: it is done.

@@ -71,6 +71,12 @@ func Run(ctx context.Context, s *scenarios.Scenario, o Options) (*Verdict, error
 	if err != nil {
 		return nil, err
 	}
+	return RunOn(ctx, s, rig, o)
+}
+
+// RunOn is Run on a rig that was built from the scenario and perhaps changed
+// in ways that no setting describes.
+func RunOn(ctx context.Context, s *scenarios.Scenario, rig *rtloop.Rig, o Options) (*Verdict, error) {
 	if o.Observe != nil {
 		for _, l := range rig.Lanes {
 			l.Observe = o.Observe(l.Name)
@@ -81,7 +87,7 @@ func Run(ctx context.Context, s *scenarios.Scenario, o Options) (*Verdict, error
 		progress = func(done int64) { o.Progress(done, rig.Ticks) }
 	}
 	began := time.Now()
-	err = rig.Run(ctx, progress)
+	err := rig.Run(ctx, progress)
 	v := &Verdict{
 		Scenario: s.Name, Title: s.Title, Ticks: rig.Ticks, Rate: s.Loop.Num("rate"), Slowdown: s.Loop.Num("slowdown"),
 		Step: rig.Step, Time: float64(rig.Ticks) * rig.Step, Drive: s.Excitation.Drives.Dim(), Scene: s,

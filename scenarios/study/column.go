@@ -41,8 +41,11 @@ func suffix(d quantity.Dim) string {
 	return "_" + suffixes.Replace(d.SI())
 }
 
-// settingName is the column of a setting that varies.
-func settingName(path string, s *kind.Setting) string { return path + suffix(s.Dim) }
+// SettingName is the column of a setting that varies.
+func SettingName(path string, s *kind.Setting) string { return path + suffix(s.Dim) }
+
+// Column is the name that the setting has as a column, with its unit.
+func (r *Range) Column() string { return SettingName(r.Path, &r.Setting) }
 
 // channelFigures are found for each channel.
 var channelFigures = []struct {
@@ -107,6 +110,15 @@ func columns(s *scenarios.Scenario) []Column {
 	return out
 }
 
+// Judged reports whether an acceptance limit can judge the figure.
+func (c *Column) Judged() bool { return c.judged }
+
+// Of returns the figure of a lane, NaN where it is undefined.
+func (c *Column) Of(l *accept.Lane) float64 { return c.get(l) }
+
+// ColumnsOf are the figures that runs of a scenario have.
+func ColumnsOf(s *scenarios.Scenario) []Column { return columns(s) }
+
 // Columns returns the figures that every run of the study has.
 func (st *Study) Columns() []Column { return st.columns }
 
@@ -123,8 +135,11 @@ func (c *Column) Bad(v float64) float64 {
 	return math.Abs(v)
 }
 
-// good is the reverse of Bad, but for a sign that it has dropped.
-func (c *Column) good(bad float64) float64 {
+// Good is the reverse of Bad, but for a sign that it has dropped.
+func (c *Column) Good(bad float64) float64 {
+	if math.IsInf(bad, 0) {
+		return math.NaN()
+	}
 	if c.Figure == "energy_margin" || c.Figure == "added_damping" {
 		return -bad
 	}

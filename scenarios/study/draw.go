@@ -67,14 +67,24 @@ const deviations = 3
 // in the order of the paths, i and, for a Latin hypercube, the number of draws.
 func (st *Study) draw(dst []float64, i int64) []float64 {
 	for k := range st.Spread {
-		u := unit(st.Seed, uint64(k), uint64(i))
+		u := unit(uint64(st.Seed), uint64(k), uint64(i))
 		if st.Sampling != Independent {
 			n := uint64(st.Draws)
-			u = (float64(shuffle(uint64(i), n, mix(st.Seed, uint64(k), 'o'))) + u) / float64(n)
+			u = (float64(shuffle(uint64(i), n, mix(uint64(st.Seed), uint64(k), 'o'))) + u) / float64(n)
 		}
 		dst = append(dst, st.Law.quantile(st.Spread[k].Low, st.Spread[k].High, u))
 	}
 	return dst
+}
+
+// LatinPoint is point i of n of a Latin hypercube that fills the unit cube.
+func LatinPoint(seed, i, n int64, dims int) []float64 {
+	out := make([]float64, dims)
+	for k := range out {
+		u := unit(uint64(seed), uint64(k), uint64(i), 'p')
+		out[k] = (float64(shuffle(uint64(i), uint64(n), mix(uint64(seed), uint64(k), 'l'))) + u) / float64(n)
+	}
+	return out
 }
 
 // quantile returns the value below which the part u, above 0 and below 1, of the

@@ -93,9 +93,7 @@ func (st *Study) copyParts(path string, n int, w *bufio.Writer, have func(Row)) 
 	var line []byte
 	for i := range n {
 		s := Shard{i + 1, n}
-		t := &Table{study: st, path: s.Path(path)}
-		t.next, t.last = s.Part(st.Runs())
-		f, err := os.Open(t.path)
+		f, err := os.Open(s.Path(path))
 		if errors.Is(err, fs.ErrNotExist) {
 			absent = append(absent, s.String())
 			continue
@@ -104,18 +102,19 @@ func (st *Study) copyParts(path string, n int, w *bufio.Writer, have func(Row)) 
 			return err
 		}
 		var failed error
-		_, err = t.read(f, func(r Row) {
+		part := newRows(st, s, func(r Row) {
 			line = st.appendRow(line[:0], &r)
 			if _, e := w.Write(line); e != nil && failed == nil {
 				failed = e
 			}
 			have(r)
 		})
+		_, err = part.read(s.Path(path), f)
 		f.Close()
 		if err := errors.Join(err, failed); err != nil {
 			return firstOf(failed, err)
 		}
-		if t.next < t.last {
+		if part.next < part.last {
 			absent = append(absent, s.String())
 		}
 	}

@@ -16,36 +16,47 @@ import (
 // reads as a scenario again, with the version of the program and the request. The
 // same request writes the same text.
 func (st *Study) Provenance(version string, shard Shard) (string, error) {
+	over := make([]string, len(st.Grid))
+	for i := range st.Grid {
+		over[i] = st.Grid[i].String()
+	}
+	pairs := []Pair{{"set", append([]string{}, st.Sets...)}, {"over", over}, {"draws", st.Draws}}
+	if st.Draws > 0 {
+		pairs = append(pairs, Pair{"law", string(st.Law)}, Pair{"sampling", string(st.Sampling)}, Pair{"seed", st.Seed})
+	}
+	pairs = append(pairs, Pair{"runs", st.Runs()})
+	if !shard.Whole() {
+		pairs = append(pairs, Pair{"shard", shard.String()})
+	}
+	return Provenance(st.Scenario, st.Lane, version, "study", pairs)
+}
+
+// Pair is one thing that a provenance says of a request.
+type Pair struct {
+	Key   string
+	Value any // a text, a number, or a list of texts
+}
+
+// Provenance writes the whole resolved scenario with the version of the program,
+// and what was asked for in a section of that name.
+func Provenance(s *scenarios.Scenario, lane, version, section string, pairs []Pair) (string, error) {
 	var b strings.Builder
-	b.WriteString(st.Scenario.Resolved())
+	b.WriteString(s.Resolved())
 	line := func(key string, value any) { fmt.Fprintf(&b, "%s = %s\n", key, tomlText(value)) }
 	b.WriteString("\n[provenance]\n")
 	line("version", version)
-	line("scenario", st.Scenario.Name)
-	line("lane", st.Lane)
-	sum, err := st.motion()
+	line("scenario", s.Name)
+	line("lane", lane)
+	sum, err := motion(s)
 	if err != nil {
 		return "", err
 	}
 	if sum != "" {
 		line("motion_sha256", sum)
 	}
-	b.WriteString("\n[provenance.study]\n")
-	over := make([]string, len(st.Grid))
-	for i := range st.Grid {
-		over[i] = st.Grid[i].String()
-	}
-	line("set", append([]string{}, st.Sets...))
-	line("over", over)
-	line("draws", st.Draws)
-	if st.Draws > 0 {
-		line("law", string(st.Law))
-		line("sampling", string(st.Sampling))
-		line("seed", st.Seed)
-	}
-	line("runs", st.Runs())
-	if !shard.Whole() {
-		line("shard", shard.String())
+	fmt.Fprintf(&b, "\n[provenance.%s]\n", section)
+	for _, p := range pairs {
+		line(p.Key, p.Value)
 	}
 	return b.String(), nil
 }
@@ -62,8 +73,8 @@ func tomlText(v any) string {
 // motion is the fingerprint of the file that the excitation is read from, "" if
 // it is not read from one: the same scenario with another record in the file is
 // another study.
-func (st *Study) motion() (string, error) {
-	f, err := st.Scenario.OpenMotion()
+func motion(s *scenarios.Scenario) (string, error) {
+	f, err := s.OpenMotion()
 	if f == nil || err != nil {
 		return "", err
 	}
@@ -117,7 +128,7 @@ type recorded struct {
 			Set, Over     []string
 			Draws         int64
 			Law, Sampling string
-			Seed          uint64
+			Seed          int64
 			Shard         string
 		}
 	}

@@ -8,7 +8,6 @@ import (
 	"strings"
 
 	"antelag/rtloop"
-	"antelag/scenarios/accept"
 )
 
 // Row is what one run came to.
@@ -35,15 +34,18 @@ var completed = rtloop.Completed.String()
 // Completed reports whether the run came to its end.
 func (r *Row) Completed() bool { return r.Outcome == completed }
 
-// row gathers what a lane came to.
-func (st *Study) row(run int64, l *accept.Lane) Row {
+// row gathers what a run came to.
+func (st *Study) row(run int64, l *Judged) Row {
+	if l.Refused != nil {
+		return st.refused(run, l.Refused)
+	}
 	r := Row{Run: run, Values: st.Values(nil, run), Outcome: l.Outcome.String(), Ran: l.Ran, Pass: l.Pass}
 	if l.Trip != nil {
 		r.Limit, r.Channel = l.Trip.Limit, l.Trip.Channel
 	}
 	r.Figures = make([]float64, len(st.columns))
 	for i := range st.columns {
-		r.Figures[i] = st.columns[i].get(l)
+		r.Figures[i] = st.columns[i].Of(&l.Lane)
 	}
 	return r
 }
@@ -62,7 +64,7 @@ func (st *Study) Header() string {
 	names := []string{"run"}
 	settings := st.Settings()
 	for i, path := range st.Paths() {
-		names = append(names, settingName(path, &settings[i]))
+		names = append(names, SettingName(path, &settings[i]))
 	}
 	names = append(names, "outcome", "limit", "channel", "ran_s", "pass")
 	for i := range st.columns {

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"runtime"
+	"strings"
 	"sync"
 
 	"antelag/scenarios"
@@ -105,55 +106,79 @@ func inOrder(ctx context.Context, first, last, chunk int64, workers int,
 	return ctx.Err()
 }
 
-// evaluate makes the runs from first to before last. Those that have motion and
-// reference in common are made together.
+// evaluate makes the runs from first to before last.
 func (st *Study) evaluate(ctx context.Context, first, last int64) ([]Row, error) {
-	rows := make([]Row, last-first)
-	groups := map[string][]int64{}
-	var order []string
+	changes := make([][]scenarios.Change, 0, last-first)
 	for i := first; i < last; i++ {
-		key := st.key(i)
+		changes = append(changes, st.Changes(i))
+	}
+	judged, err := Judge(ctx, st.Scenario, st.Lane, changes)
+	if err != nil {
+		return nil, err
+	}
+	rows := make([]Row, len(judged))
+	for k := range judged {
+		rows[k] = st.row(first+int64(k), &judged[k])
+	}
+	return rows, nil
+}
+
+// Judged is what one variation of a scenario came to: a lane, or why it could not
+// be built.
+type Judged struct {
+	accept.Lane
+	Refused error
+}
+
+// Judge runs a lane of a scenario once for every list of changes, in the calling
+// goroutine. Those that have motion and reference in common are made together.
+// Changes that make no test that can be built are no error but the result of that
+// one.
+func Judge(ctx context.Context, s *scenarios.Scenario, lane string, changes [][]scenarios.Change) ([]Judged, error) {
+	out := make([]Judged, len(changes))
+	groups := map[string][]int{}
+	var order []string
+	for i, c := range changes {
+		key := common(c)
 		if _, seen := groups[key]; !seen {
 			order = append(order, key)
 		}
 		groups[key] = append(groups[key], i)
 	}
 	for _, key := range order {
-		if err := st.together(ctx, groups[key], func(i int64, r Row) { rows[i-first] = r }); err != nil {
+		if err := together(ctx, s, lane, changes, groups[key], out); err != nil {
 			return nil, err
 		}
 	}
-	return rows, nil
+	return out, nil
 }
 
-// key is the same for runs that have motion and reference in common.
-func (st *Study) key(i int64) string {
-	if len(st.shared) == 0 {
-		return ""
+// common is the same for variations that have motion and reference in common.
+func common(changes []scenarios.Change) string {
+	var key strings.Builder
+	for _, c := range changes {
+		if sharedSection(c.Path) {
+			key.WriteString(c.Path + "=" + c.Value + "\n")
+		}
 	}
-	values := st.Values(nil, i)
-	var key []byte
-	for _, k := range st.shared {
-		key = appendFloat(append(key, ','), values[k])
-	}
-	return string(key)
+	return key.String()
 }
 
-// together makes runs that have motion and reference in common.
-func (st *Study) together(ctx context.Context, runs []int64, put func(i int64, r Row)) error {
-	batch := accept.NewBatch(st.Lane)
-	var built []int64
-	for _, i := range runs {
-		s, err := st.Scenario.With(st.Changes(i)...)
+// together makes variations that have motion and reference in common.
+func together(ctx context.Context, s *scenarios.Scenario, lane string, changes [][]scenarios.Change, group []int, out []Judged) error {
+	batch := accept.NewBatch(lane)
+	var built []int
+	for _, i := range group {
+		varied, err := s.With(changes[i]...)
 		if err == nil {
-			err = batch.Add(s)
+			err = batch.Add(varied)
 		}
 		var bad *scenarios.Error
 		switch {
 		case err == nil:
 			built = append(built, i)
 		case errors.As(err, &bad):
-			put(i, st.refused(i, err))
+			out[i].Refused = err
 		default:
 			return err
 		}
@@ -163,7 +188,7 @@ func (st *Study) together(ctx context.Context, runs []int64, put func(i int64, r
 		return err
 	}
 	for k, i := range built {
-		put(i, st.row(i, &lanes[k]))
+		out[i].Lane = lanes[k]
 	}
 	return nil
 }

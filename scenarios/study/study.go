@@ -25,7 +25,7 @@ type Request struct {
 	Draws    int64    // draws from [spread] at every point of the grid; 0: none
 	Law      Law
 	Sampling Sampling
-	Seed     uint64
+	Seed     int64
 }
 
 // Study is a request, checked against its scenario. It does not change and may
@@ -37,7 +37,6 @@ type Study struct {
 	Spread []Spread // what is drawn, in the order of the paths; nil without draws
 
 	columns []Column
-	shared  []int // which varied settings motion or reference depend on
 	points  int64 // of the grid
 }
 
@@ -72,11 +71,6 @@ func New(s *scenarios.Scenario, r Request) (*Study, error) {
 	if err := st.draws(); err != nil {
 		return nil, err
 	}
-	for i, p := range st.Paths() {
-		if sharedSection(p) {
-			st.shared = append(st.shared, i)
-		}
-	}
 	st.columns = columns(s)
 	return st, nil
 }
@@ -90,7 +84,7 @@ func axes(s *scenarios.Scenario, texts []string) ([]Axis, error) {
 			return nil, err
 		}
 		for _, other := range out {
-			if same(s, a.Path, other.Path) {
+			if Same(s, a.Path, other.Path) {
 				return nil, fmt.Errorf("%s is varied twice", a.Path)
 			}
 		}
@@ -116,7 +110,7 @@ func (st *Study) draws() error {
 	}
 	for _, sp := range st.Scenario.Spread {
 		for _, a := range st.Grid {
-			if same(st.Scenario, sp.Path, a.Path) {
+			if Same(st.Scenario, sp.Path, a.Path) {
 				return fmt.Errorf("%s stands in [spread] too; it can be drawn or gone over, not both", a.Path)
 			}
 		}
@@ -129,9 +123,9 @@ func (st *Study) draws() error {
 	return nil
 }
 
-// same reports whether two paths lead to one setting; a channel, for one, can
+// Same reports whether two paths lead to one setting; a channel, for one, can
 // be called by name or by number.
-func same(s *scenarios.Scenario, a, b string) bool {
+func Same(s *scenarios.Scenario, a, b string) bool {
 	x, err := s.Locate(a)
 	if err != nil {
 		return false

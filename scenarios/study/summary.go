@@ -2,6 +2,7 @@ package study
 
 import (
 	"math"
+	"slices"
 	"strings"
 
 	"gonum.org/v1/gonum/mathext"
@@ -19,6 +20,7 @@ type Summary struct {
 	Figures  []Tally          // of all columns that are no single channel's
 	Points   []Point          // where there are a grid and draws
 	Spans    []Span           // of a grid of one setting: where all runs pass
+	Compute  Compute          // what it cost, for who fills it in
 }
 
 // Tally is one figure over all runs. A run that did not come to its end, and one
@@ -47,10 +49,11 @@ type Point struct {
 	Values []float64 // of the grid's settings
 	Runs   int64
 	Passed int64
-	Worst  float64 // of the main figure, NaN where a run has none
-	Most   float64 // what 95 % of the runs do not exceed
+	// Worst of each figure, in the order of Figures, and what 95 % of the runs
+	// are no worse than; NaN where a run that counts has none.
+	Worst, Most []float64
 
-	sketch *sketch
+	sketches []*sketch // nil when all draws have been seen
 }
 
 // Span is a stretch of neighbouring values of a grid at which all runs pass.
@@ -79,14 +82,10 @@ func NewSummary(st *Study) *Summary {
 
 // Main is the figure that a study is about unless another is named: how wrong the
 // test's answer is, or, where there is no structure to answer, its tracking.
-func (s *Summary) Main() *Tally {
-	main := &s.Figures[0]
-	for i := range s.Figures {
-		if s.Figures[i].Column.Figure == "response_error" {
-			main = &s.Figures[i]
-		}
-	}
-	return main
+func (s *Summary) Main() *Tally { return &s.Figures[s.main()] }
+
+func (s *Summary) main() int {
+	return max(0, slices.IndexFunc(s.Figures, func(t Tally) bool { return t.Column.Figure == "response_error" }))
 }
 
 // Add takes the row of the next run.
@@ -108,12 +107,18 @@ func (s *Summary) Add(r Row) {
 	s.addPoint(&r)
 }
 
-func (t *Tally) add(r *Row) {
-	v := r.Figures[t.column]
+// value is the figure of a run, NaN where that did not come to its end.
+func (t *Tally) value(r *Row) float64 {
 	if !r.Completed() {
-		v = math.NaN()
+		return math.NaN()
 	}
-	bad := t.Column.Bad(v)
+	return r.Figures[t.column]
+}
+
+func (t *Tally) bad(r *Row) float64 { return t.Column.Bad(t.value(r)) }
+
+func (t *Tally) add(r *Row) {
+	v, bad := t.value(r), t.bad(r)
 	t.sketch.add(bad)
 	if !math.IsNaN(t.Limit) && !(bad <= t.Column.Bad(t.Limit)) {
 		t.Failed++
@@ -130,11 +135,7 @@ func (t *Tally) add(r *Row) {
 // Quantile returns the value that the part q of the runs are no worse than, by
 // size where the sign does not matter; NaN where that is no number.
 func (t *Tally) Quantile(q float64) float64 {
-	v := t.Column.good(t.sketch.quantile(q))
-	if math.IsInf(v, 0) {
-		return math.NaN()
-	}
-	return v
+	return t.Column.Good(t.sketch.quantile(q))
 }
 
 // addPoint sums the runs up by point of the grid.
@@ -145,7 +146,11 @@ func (s *Summary) addPoint(r *Row) {
 	}
 	draws := max(1, st.Draws)
 	if r.Run%draws == 0 {
-		s.Points = append(s.Points, Point{Values: r.Values[:len(st.Grid):len(st.Grid)], sketch: newSketch()})
+		p := Point{Values: r.Values[:len(st.Grid):len(st.Grid)]}
+		for range s.Figures {
+			p.sketches = append(p.sketches, newSketch())
+		}
+		s.Points = append(s.Points, p)
 	}
 	if len(s.Points) == 0 { // a shard may begin within a point
 		return
@@ -155,27 +160,25 @@ func (s *Summary) addPoint(r *Row) {
 	if r.Pass {
 		p.Passed++
 	}
-	main := s.Main()
-	v := r.Figures[main.column]
-	if !r.Completed() {
-		v = math.NaN()
+	for i := range s.Figures {
+		p.sketches[i].add(s.Figures[i].bad(r))
 	}
-	p.sketch.add(main.Column.Bad(v))
-	if r.Run%draws != draws-1 {
-		return
-	}
-	p.Worst, p.Most = finite(main.Column.good(p.sketch.most)), finite(main.Column.good(p.sketch.quantile(0.95)))
-	p.sketch = nil
-	if len(st.Grid) == 1 {
-		s.span(p)
+	if r.Run%draws == draws-1 {
+		s.closePoint(p)
 	}
 }
 
-func finite(v float64) float64 {
-	if math.IsInf(v, 0) {
-		return math.NaN()
+// closePoint sums up a point whose draws have all been seen.
+func (s *Summary) closePoint(p *Point) {
+	for i, sk := range p.sketches {
+		c := s.Figures[i].Column
+		p.Worst = append(p.Worst, c.Good(sk.most))
+		p.Most = append(p.Most, c.Good(sk.quantile(0.95)))
 	}
-	return v
+	p.sketches = nil
+	if len(s.Study.Grid) == 1 {
+		s.span(p)
+	}
 }
 
 // span lengthens the last span by a point that passes, or begins one.
@@ -210,18 +213,24 @@ func (s *Summary) AtLeast() float64 {
 
 // Command is how run i is made again, by itself.
 func (st *Study) Command(i int64) string {
-	parts := []string{"antelag run", quoteShell(st.Scenario.Name)}
-	for _, set := range st.Sets {
-		parts = append(parts, "--set", quoteShell(set))
-	}
+	sets := slices.Clone(st.Sets)
 	for _, c := range st.Changes(i) {
-		parts = append(parts, "--set", quoteShell(c.Path+"="+c.Value))
+		sets = append(sets, c.Path+"="+c.Value)
+	}
+	return Command("run", st.Scenario.Name, sets)
+}
+
+// Command is a command line on a scenario with some settings changed.
+func Command(verb, scenario string, sets []string) string {
+	parts := []string{"antelag", verb, Quote(scenario)}
+	for _, set := range sets {
+		parts = append(parts, "--set", Quote(set))
 	}
 	return strings.Join(parts, " ")
 }
 
-// quoteShell quotes a word for a shell where it needs it.
-func quoteShell(word string) string {
+// Quote quotes a word for a shell where it needs it.
+func Quote(word string) string {
 	plain := func(r rune) bool {
 		return r >= 'a' && r <= 'z' || r >= 'A' && r <= 'Z' || r >= '0' && r <= '9' || strings.ContainsRune("_-./=:,+@%", r)
 	}

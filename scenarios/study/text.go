@@ -1,7 +1,6 @@
 package study
 
 import (
-	"encoding/json"
 	"fmt"
 	"io"
 	"math"
@@ -16,16 +15,16 @@ import (
 
 // Compute says what a study cost.
 type Compute struct {
-	Wall    float64 // s
-	Runs    int64   // made now; others were there
-	Workers int
+	Wall    float64 `json:"wall_s"`
+	Runs    int64   `json:"runs"` // made now; others were there
+	Workers int     `json:"workers"`
 }
 
 // WriteText writes the summary for people.
-func (s *Summary) WriteText(w io.Writer, c Compute, colour bool) error {
+func (s *Summary) WriteText(w io.Writer, colour bool) error {
 	var b strings.Builder
 	st := s.Study
-	fmt.Fprintf(&b, "%s: %s\n%s\n%s\n", accept.Printable(st.Scenario.Name), accept.Printable(st.Scenario.Title), st.Describe(), s.cost(c))
+	fmt.Fprintf(&b, "%s: %s\n%s\n%s\n", accept.Printable(st.Scenario.Name), accept.Printable(st.Scenario.Title), st.Describe(), s.cost())
 	s.verdict(&b, colour)
 	s.figures(&b, colour)
 	s.varied(&b)
@@ -56,7 +55,8 @@ func (st *Study) Describe() string {
 	return text
 }
 
-func (s *Summary) cost(c Compute) string {
+func (s *Summary) cost() string {
+	c := s.Compute
 	duration := quantity.Short(s.Study.Scenario.Loop.Num("duration"), quantity.Time)
 	text := fmt.Sprintf("%s of %s of test each", count(s.Runs, "run"), duration)
 	if s.Runs < s.Study.Runs() {
@@ -146,7 +146,7 @@ func (s *Summary) figures(b *strings.Builder, colour bool) {
 	var marks []string
 	for i := range s.Figures {
 		t := &s.Figures[i]
-		row := []string{t.Column.Label, t.Column.extreme(&t.Worst), t.Column.size(t.Quantile(0.95)), t.Column.size(t.Quantile(0.5)), t.Column.extreme(&t.Best)}
+		row := []string{t.Column.Label, t.Column.extreme(&t.Worst), t.Column.Size(t.Quantile(0.95)), t.Column.Size(t.Quantile(0.5)), t.Column.extreme(&t.Best)}
 		mark := "    "
 		if !math.IsNaN(t.Limit) {
 			j := accept.Judgement{Limit: t.Column.Figure, Want: t.Limit, Dim: t.Column.Dim}
@@ -155,7 +155,7 @@ func (s *Summary) figures(b *strings.Builder, colour bool) {
 		}
 		rows, marks = append(rows, row), append(marks, mark)
 	}
-	writeTable(b, rows, marks)
+	WriteTable(b, rows, marks)
 }
 
 // extreme writes the figure of one run, or why it has none.
@@ -166,8 +166,8 @@ func (c *Column) extreme(e *Extreme) string {
 	return c.Format(e.Value)
 }
 
-// size writes a quantile, whose sign is not known where it does not matter.
-func (c *Column) size(v float64) string {
+// Size writes a value whose sign is not known, as of a quantile.
+func (c *Column) Size(v float64) string {
 	if c.Figure == "delay" {
 		return quantity.Format(v, c.Dim)
 	}
@@ -189,7 +189,7 @@ func (s *Summary) varied(b *strings.Builder) {
 		sp := &st.Spread[i]
 		rows = append(rows, []string{sp.Path, sp.Setting.Format(sp.Low), sp.Setting.Format(sp.High), "drawn"})
 	}
-	writeTable(b, rows, nil)
+	WriteTable(b, rows, nil)
 }
 
 // tellPoints is how many points of a grid are told on a screen.
@@ -210,20 +210,20 @@ func (s *Summary) points(b *strings.Builder) {
 	}
 	rows := [][]string{head}
 	for _, p := range s.Points {
-		if p.sketch != nil {
+		if p.Worst == nil {
 			break // not all its draws are there
 		}
 		var row []string
 		for i, v := range p.Values {
 			row = append(row, st.Grid[i].Setting.Format(v))
 		}
-		row = append(row, fmt.Sprintf("%d of %d", p.Passed, p.Runs), main.Column.Format(p.Worst))
+		row = append(row, fmt.Sprintf("%d of %d", p.Passed, p.Runs), main.Column.Format(p.Worst[s.main()]))
 		if st.Draws > 0 {
-			row = append(row, main.Column.size(p.Most))
+			row = append(row, main.Column.Size(p.Most[s.main()]))
 		}
 		rows = append(rows, row)
 	}
-	writeTable(b, rows, nil)
+	WriteTable(b, rows, nil)
 }
 
 // worst names the runs in which the figures that count were worst, and how to
@@ -254,9 +254,9 @@ func (s *Summary) worst(b *strings.Builder) {
 	}
 }
 
-// writeTable writes a blank line and rows in columns, the headings first, with a
+// WriteTable writes a blank line and rows in columns, the headings first, with a
 // mark before each row but the headings.
-func writeTable(b *strings.Builder, rows [][]string, marks []string) {
+func WriteTable(b *strings.Builder, rows [][]string, marks []string) {
 	var text strings.Builder
 	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
 	for _, row := range rows {
@@ -275,107 +275,4 @@ func writeTable(b *strings.Builder, rows [][]string, marks []string) {
 		}
 		fmt.Fprintf(b, "  %s\n", strings.TrimRight(mark+line, " "))
 	}
-}
-
-// MarshalJSON writes the summary with SI figures; what is undefined is null.
-func (s *Summary) MarshalJSON() ([]byte, error) {
-	st := s.Study
-	out := summaryJSON{
-		Scenario: st.Scenario.Name, Lane: st.Lane, Sets: append([]string{}, st.Sets...), Draws: st.Draws,
-		Of: st.Runs(), Runs: s.Runs, Passed: s.Passed, Pass: s.Pass(), Outcomes: s.Outcomes, Limits: s.Limits,
-		Settings: []settingJSON{}, Figures: []tallyJSON{}, Points: []pointJSON{}, Spans: [][2]float64{},
-	}
-	if st.Draws > 0 {
-		out.Law, out.Sampling, out.Seed = string(st.Law), string(st.Sampling), st.Seed
-		if len(st.Grid) == 0 {
-			v := rtloop.Figure(s.AtLeast())
-			out.AtLeast = &v
-		}
-	}
-	for i := range st.Grid {
-		a := &st.Grid[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(a.Path, &a.Setting), a.Low, a.High, a.N, a.Log, false})
-	}
-	for i := range st.Spread {
-		sp := &st.Spread[i]
-		out.Settings = append(out.Settings, settingJSON{settingName(sp.Path, &sp.Setting), sp.Low, sp.High, 0, false, true})
-	}
-	for i := range s.Figures {
-		t := &s.Figures[i]
-		out.Figures = append(out.Figures, tallyJSON{
-			Name: t.Column.Name(), Limit: rtloop.Figure(t.Limit), Failed: t.Failed,
-			Worst: st.extremeJSON(&t.Worst), Best: st.extremeJSON(&t.Best),
-			Quantiles: map[string]rtloop.Figure{"0.5": rtloop.Figure(t.Quantile(0.5)), "0.9": rtloop.Figure(t.Quantile(0.9)), "0.95": rtloop.Figure(t.Quantile(0.95)), "0.99": rtloop.Figure(t.Quantile(0.99))},
-		})
-	}
-	for _, p := range s.Points {
-		if p.sketch == nil {
-			out.Points = append(out.Points, pointJSON{p.Values, p.Runs, p.Passed, rtloop.Figure(p.Worst), rtloop.Figure(p.Most)})
-		}
-	}
-	for _, sp := range s.Spans {
-		out.Spans = append(out.Spans, [2]float64{sp.Low, sp.High})
-	}
-	return json.Marshal(out)
-}
-
-type summaryJSON struct {
-	Scenario string           `json:"scenario"`
-	Lane     string           `json:"lane"`
-	Sets     []string         `json:"set"`
-	Draws    int64            `json:"draws"`
-	Law      string           `json:"law,omitempty"`
-	Sampling string           `json:"sampling,omitempty"`
-	Seed     uint64           `json:"seed,omitempty"`
-	Settings []settingJSON    `json:"settings"`
-	Of       int64            `json:"of"`
-	Runs     int64            `json:"runs"`
-	Passed   int64            `json:"passed"`
-	Pass     bool             `json:"pass"`
-	AtLeast  *rtloop.Figure   `json:"pass_at_least,omitempty"`
-	Outcomes map[string]int64 `json:"outcomes"`
-	Limits   map[string]int64 `json:"limits"`
-	Figures  []tallyJSON      `json:"figures"`
-	Points   []pointJSON      `json:"points"`
-	Spans    [][2]float64     `json:"all_pass"`
-}
-
-type settingJSON struct {
-	Name  string  `json:"name"`
-	Low   float64 `json:"low"`
-	High  float64 `json:"high"`
-	N     int     `json:"values,omitempty"`
-	Log   bool    `json:"log,omitempty"`
-	Drawn bool    `json:"drawn"`
-}
-
-type tallyJSON struct {
-	Name      string                   `json:"name"`
-	Limit     rtloop.Figure            `json:"limit"`
-	Failed    int64                    `json:"failed"`
-	Worst     extremeJSON              `json:"worst"`
-	Best      extremeJSON              `json:"best"`
-	Quantiles map[string]rtloop.Figure `json:"quantiles"`
-}
-
-type extremeJSON struct {
-	Run     int64         `json:"run"`
-	Value   rtloop.Figure `json:"value"`
-	Outcome string        `json:"outcome"`
-	Command string        `json:"command"`
-}
-
-type pointJSON struct {
-	Values []float64     `json:"values"`
-	Runs   int64         `json:"runs"`
-	Passed int64         `json:"passed"`
-	Worst  rtloop.Figure `json:"worst"`
-	Most   rtloop.Figure `json:"q95"`
-}
-
-func (st *Study) extremeJSON(e *Extreme) extremeJSON {
-	if e.Outcome == "" {
-		return extremeJSON{Run: -1, Value: rtloop.Figure(math.NaN())}
-	}
-	return extremeJSON{e.Run, rtloop.Figure(e.Value), e.Outcome, st.Command(e.Run)}
 }

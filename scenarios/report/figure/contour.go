@@ -41,7 +41,7 @@ func (c *cells) contours(canvas draw.Canvas, tx, ty func(float64) vg.Length, tak
 				p := along(longest, share)
 				places = append(places, vg.Point{X: p.X - wide/2, Y: p.Y - contWords.Font.Size/3})
 			}
-			taken.write(canvas, contWords, text, places...)
+			taken.place(canvas, contWords, text, false, places)
 		}
 	}
 }

@@ -2,6 +2,7 @@ package figure
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/plot"
 	"gonum.org/v1/plot/vg"
@@ -20,6 +21,11 @@ func (c *curve) shown(x, y float64) bool {
 	return finite(x) && finite(y) && !(c.logX && x <= 0) && !(c.logY && y <= 0)
 }
 
+// history reports whether the curve runs along an X that never goes back.
+func (c *curve) history() bool {
+	return (!c.line.Points || c.line.Joined) && slices.IsSorted(c.line.X)
+}
+
 // Plot draws band, line and markers.
 func (c *curve) Plot(canvas draw.Canvas, p *plot.Plot) {
 	tx, ty := p.Transforms(&canvas)
@@ -32,6 +38,9 @@ func (c *curve) Plot(canvas draw.Canvas, p *plot.Plot) {
 			path := make([]vg.Point, len(piece))
 			for i, k := range piece {
 				path[i] = vg.Point{X: tx(c.line.X[k]), Y: ty(c.line.Y[k])}
+			}
+			if len(path) == 1 && !c.line.Points {
+				canvas.DrawGlyph(c.pen.glyph(), path[0])
 			}
 			paths = append(paths, canvas.ClipLinesXY(thin(path))...)
 		}

@@ -77,10 +77,16 @@ func (p Panel) describe() string {
 		if l.Vertical {
 			unit = p.X.Unit
 		}
-		fmt.Fprintf(&b, " Limit %s at %s.", l.Name, valued(l.Value, unit))
+		what := "Limit"
+		if l.Reference {
+			what = "Reference"
+		}
+		if l.Name != "" { // the other end of a limit that has been said
+			fmt.Fprintf(&b, " %s: %s, at %s.", what, l.Name, valued(round(l.Value, 4), unit))
+		}
 	}
 	for _, m := range p.Marks {
-		fmt.Fprintf(&b, " %s at %s, %s.", m.Name, valued(m.X, p.X.Unit), valued(m.Y, p.Y.Unit))
+		fmt.Fprintf(&b, " %s at %s, %s.", m.Name, valued(round(m.X, 4), p.X.Unit), valued(round(m.Y, 4), p.Y.Unit))
 	}
 	return b.String()
 }

@@ -69,9 +69,10 @@ type Mark struct {
 // if Vertical. One that lies so far from the data that it would flatten them is
 // written at the edge instead.
 type Level struct {
-	Name     string
-	Value    float64
-	Vertical bool
+	Name      string
+	Value     float64
+	Vertical  bool
+	Reference bool // no limit but something to compare with: drawn in grey
 }
 
 // Map is a quantity over the plane, drawn in cells around its points. Contours

@@ -2,6 +2,7 @@ package figure
 
 import (
 	"math"
+	"regexp"
 	"strings"
 	"unicode"
 
@@ -239,12 +240,27 @@ func wrap(style text.Style, words string, wide vg.Length) []string {
 	return append(rows, row)
 }
 
-// clean takes out what cannot be printed, nor stand in XML.
+// clean takes out what cannot be printed, nor stand in XML, and writes raised
+// digits that the font has not as it can.
 func clean(s string) string {
-	return strings.Map(func(r rune) rune {
+	s = strings.Map(func(r rune) rune {
 		if unicode.IsPrint(r) {
 			return r
 		}
 		return ' '
 	}, strings.ToValidUTF8(s, "\ufffd"))
+	return raised.ReplaceAllStringFunc(s, func(power string) string {
+		if !strings.ContainsAny(power, "⁻⁰⁹") {
+			return power
+		}
+		if digits, ok := strings.CutPrefix(power, "10"); ok {
+			return "1e" + level.Replace(digits)
+		}
+		return "^" + level.Replace(power)
+	})
 }
+
+var (
+	raised = regexp.MustCompile(`(\b10)?[⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+`)
+	level  = strings.NewReplacer("⁻", "−", "⁰", "0", "¹", "1", "²", "2", "³", "3", "⁴", "4", "⁵", "5", "⁶", "6", "⁷", "7", "⁸", "8", "⁹", "9")
+)

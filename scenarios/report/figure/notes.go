@@ -25,6 +25,11 @@ func (n notes) free(r vg.Rectangle) bool {
 // write puts words at the first of some places (their lower left corners) that
 // lies inside and is free, or at the first.
 func (n *notes) write(c draw.Canvas, style text.Style, words string, places ...vg.Point) {
+	n.place(c, style, words, true, places)
+}
+
+// place is write; without must it leaves the words out where no place is free.
+func (n *notes) place(c draw.Canvas, style text.Style, words string, must bool, places []vg.Point) {
 	wide, high := style.Width(words), style.Font.Size
 	at := func(p vg.Point) vg.Rectangle {
 		return vg.Rectangle{Min: vg.Point{X: p.X - 1.5, Y: p.Y - 0.25*high}, Max: vg.Point{X: p.X + wide + 1.5, Y: p.Y + 0.9*high}}
@@ -33,9 +38,12 @@ func (n *notes) write(c draw.Canvas, style text.Style, words string, places ...v
 	for _, p := range places {
 		r := at(p)
 		if r.Min.X >= c.Min.X && r.Max.X <= c.Max.X && r.Min.Y >= c.Min.Y && r.Max.Y <= c.Max.Y && n.free(r) {
-			box, corner = r, p
+			box, corner, must = r, p, true
 			break
 		}
+	}
+	if !must {
+		return
 	}
 	*n = append(*n, box)
 	back := paper
@@ -67,7 +75,7 @@ func (d *drawing) limit(c draw.Canvas, l Level, tx, ty func(float64) vg.Length, 
 	if l.Vertical {
 		line = vg.Rectangle{Min: vg.Point{X: tx(l.Value), Y: c.Min.Y}, Max: vg.Point{X: tx(l.Value), Y: c.Max.Y}}
 	}
-	c.StrokeLines(limitStroke, []vg.Point{line.Min, line.Max})
+	c.StrokeLines(l.stroke(), []vg.Point{line.Min, line.Max})
 	*taken = append(*taken, line)
 }
 
@@ -77,31 +85,31 @@ func (d *drawing) name(c draw.Canvas, l Level, tx, ty func(float64) vg.Length, t
 	if name == "" || !finite(l.Value) || s.log && l.Value <= 0 {
 		return
 	}
-	wide := limitWords.Width(name)
+	wide := l.words().Width(name)
 	switch {
 	case l.Value > s.high || l.Value < s.low:
 		d.beyond(c, l, name, l.Value > s.high, taken)
 	case l.Vertical:
 		x, top := tx(l.Value), c.Max.Y-9
-		taken.write(c, limitWords, name, vg.Point{X: x + 3, Y: top}, vg.Point{X: x - 3 - wide, Y: top}, vg.Point{X: x + 3, Y: top - 10}, vg.Point{X: x - 3 - wide, Y: top - 10})
+		taken.write(c, l.words(), name, vg.Point{X: x + 3, Y: top}, vg.Point{X: x - 3 - wide, Y: top}, vg.Point{X: x + 3, Y: top - 10}, vg.Point{X: x - 3 - wide, Y: top - 10})
 	default:
 		y, right, left := ty(l.Value), c.Max.X-wide-3, c.Min.X+4
-		taken.write(c, limitWords, name, vg.Point{X: right, Y: y + 3}, vg.Point{X: left, Y: y + 3}, vg.Point{X: right, Y: y - 8.5}, vg.Point{X: left, Y: y - 8.5})
+		taken.write(c, l.words(), name, vg.Point{X: right, Y: y + 3}, vg.Point{X: left, Y: y + 3}, vg.Point{X: right, Y: y - 8.5}, vg.Point{X: left, Y: y - 8.5})
 	}
 }
 
 func (d *drawing) beyond(c draw.Canvas, l Level, name string, above bool, taken *notes) {
 	arrows := map[[2]bool]string{{false, true}: " ↑", {false, false}: " ↓", {true, true}: " →", {true, false}: " ←"}
 	name += arrows[[2]bool{l.Vertical, above}]
-	wide := limitWords.Width(name)
+	wide := l.words().Width(name)
 	left, right, top, low := c.Min.X+4, c.Max.X-wide-3, c.Max.Y-9, c.Min.Y+4
 	switch {
 	case !l.Vertical && !above:
-		taken.write(c, limitWords, name, vg.Point{X: right, Y: low}, vg.Point{X: left, Y: low}, vg.Point{X: right, Y: low + 10})
+		taken.write(c, l.words(), name, vg.Point{X: right, Y: low}, vg.Point{X: left, Y: low}, vg.Point{X: right, Y: low + 10})
 	case l.Vertical && !above:
-		taken.write(c, limitWords, name, vg.Point{X: left, Y: top}, vg.Point{X: left, Y: low})
+		taken.write(c, l.words(), name, vg.Point{X: left, Y: top}, vg.Point{X: left, Y: low})
 	default:
-		taken.write(c, limitWords, name, vg.Point{X: right, Y: top}, vg.Point{X: right, Y: top - 10}, vg.Point{X: left, Y: top}, vg.Point{X: left, Y: top - 10})
+		taken.write(c, l.words(), name, vg.Point{X: right, Y: top}, vg.Point{X: right, Y: top - 10}, vg.Point{X: left, Y: top}, vg.Point{X: left, Y: top - 10})
 	}
 }
 

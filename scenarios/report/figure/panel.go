@@ -24,7 +24,7 @@ type drawing struct {
 
 // flattens is how many times the data's own span an axis may grow to show a
 // limit.
-const flattens = 3
+const flattens = 2
 
 func newDrawing(p Panel) *drawing {
 	d := &drawing{Panel: p}
@@ -41,9 +41,9 @@ func newDrawing(p Panel) *drawing {
 // scales finds the ends of both axes from all that is to be seen.
 func (d *drawing) scales() {
 	x, y := newExtent(d.X.Log), newExtent(d.Y.Log)
-	scattered := false
+	histories := false // that run along X, from one end to the other
 	for _, c := range d.curves {
-		scattered = scattered || c.line.Points && !c.line.Joined
+		histories = histories || c.history()
 		for k := range c.line.X {
 			if !c.shown(c.line.X[k], c.line.Y[k]) {
 				continue
@@ -73,7 +73,7 @@ func (d *drawing) scales() {
 			y.reach(l.Value)
 		}
 	}
-	d.x = d.X.span(x.low, x.high, d.cells == nil && (d.Equal || scattered))
+	d.x = d.X.span(x.low, x.high, d.cells == nil && (d.Equal || !histories))
 	d.y = d.Y.span(y.low, y.high, d.cells == nil)
 	if d.cells == nil && !d.Equal {
 		d.roomForNames()

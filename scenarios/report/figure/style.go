@@ -71,11 +71,29 @@ func (p pen) stroke() draw.LineStyle {
 }
 
 func (p pen) glyph() draw.GlyphStyle {
-	return draw.GlyphStyle{Color: p.colour, Radius: 2, Shape: p.marker}
+	return draw.GlyphStyle{Color: p.colour, Radius: 2.5, Shape: p.marker}
 }
 
 // limitStroke draws limits.
 var limitStroke = draw.LineStyle{Color: alert, Width: 0.9, Dashes: []vg.Length{2.5, 1.5}}
+
+// stroke draws a level.
+func (l Level) stroke() draw.LineStyle {
+	s := limitStroke
+	if l.Reference {
+		s.Color, s.Dashes = quiet, []vg.Length{1.2, 1.2}
+	}
+	return s
+}
+
+// words names a level.
+func (l Level) words() text.Style {
+	s := limitWords
+	if l.Reference {
+		s.Color = quiet
+	}
+	return s
+}
 
 // bands are the colours of a map from low to high, light enough for lines and
 // words on top; their lightness falls evenly, so that grey keeps their order.

@@ -168,15 +168,15 @@ func minus(s string) string {
 // label writes what an axis means, with its unit, and the power of ten that the
 // tick labels leave out. (The font has not all raised digits.)
 func (a Axis) label(power int) string {
-	unit := a.Unit
+	unit, name := clean(a.Unit), clean(a.Label)
 	if power != 0 {
 		unit = strings.TrimSpace("1e" + minus(strconv.Itoa(power)) + " " + unit)
 	}
 	switch {
 	case unit == "":
-		return a.Label
-	case a.Label == "":
+		return name
+	case name == "":
 		return unit
 	}
-	return a.Label + " (" + unit + ")"
+	return name + " (" + unit + ")"
 }

@@ -1,0 +1,203 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io/fs"
+	"os"
+
+	"github.com/spf13/cobra"
+	"golang.org/x/term"
+
+	"antelag/scenarios"
+	"antelag/scenarios/report/figure"
+	"antelag/scenarios/study/margin"
+)
+
+// marginOptions are the flags of margin.
+type marginOptions struct {
+	sets          []string
+	grid          string
+	measure       string
+	png, svg, csv string
+	options       margin.Options
+	force         bool
+	json          bool
+}
+
+func newMargin() *cobra.Command {
+	o := &marginOptions{}
+	cmd := &cobra.Command{
+		Use:   "margin SCENARIO",
+		Short: "how far the loop is from growing by itself",
+		Long: `Say how far the loop of a scenario is from growing by itself, from the loop that
+runs: its spectral radius and modes, and the extra delay and the gain of the
+measured force at which stability is lost, of each channel and of all together.
+It holds for small motions about rest: elements and storeys that yield count with
+their initial stiffness.
+
+--map draws the damping of the least damped mode over two settings:
+
+    antelag margin archive --map "damper.actuator.delay=0:30 ms:120,damper.compensator.delay=0:30 ms:120"
+
+Exit 0 when the loop is stable, or the map is drawn; 1 when it grows.
+
+` + cautions,
+		Args:              oneScenario("margin"),
+		ValidArgsFunction: completeScenario,
+		RunE:              o.run,
+	}
+	f := cmd.Flags()
+	f.StringArrayVar(&o.sets, "set", nil, setHelp)
+	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "the lane that is judged")
+	f.BoolVar(&o.options.AfterRun, "after-run", false, "take adaptive compensators with what they have learned by the end of the run")
+	f.StringVar(&o.grid, "map", "", "draw a map over two settings, `X=a:b:n,Y=a:b:n`")
+	f.StringVar(&o.measure, "measure", "damping", "what pictures of the map show: damping, or radius, the spectral radius")
+	f.StringVar(&o.png, "png", "", "draw the map into this PNG `file`")
+	f.StringVar(&o.svg, "svg", "", "draw the map into this SVG `file`")
+	f.StringVar(&o.csv, "csv", "", "write every cell of the map to this CSV `file`")
+	f.IntVar(&o.options.Workers, "workers", 0, "how many rows of the map are worked out at once (default: as many as there are cores)")
+	f.BoolVar(&o.force, "force", false, "overwrite existing files")
+	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
+	return cmd
+}
+
+func (o *marginOptions) run(cmd *cobra.Command, args []string) error {
+	if err := o.check(cmd); err != nil {
+		return err
+	}
+	changes, err := parseChanges(o.sets)
+	if err != nil {
+		return err
+	}
+	s, err := scenarios.Load(args[0], changes...)
+	if err != nil {
+		return err
+	}
+	bar := newProgress(s.Name)
+	defer bar.clear()
+	defer context.AfterFunc(cmd.Context(), bar.clear)()
+	o.options.Progress = bar.report
+	if o.grid != "" {
+		return o.chart(cmd, s, bar)
+	}
+	r, err := margin.Of(cmd.Context(), s, o.options)
+	bar.clear()
+	switch {
+	case errors.Is(err, context.Canceled):
+		return errVerdict
+	case err != nil:
+		return err
+	case o.json:
+		err = writeJSON(cmd.OutOrStdout(), r)
+	default:
+		err = r.WriteText(cmd.OutOrStdout(), inColour())
+	}
+	switch {
+	case err != nil:
+		return &failure{err}
+	case !r.Stable:
+		return errVerdict
+	}
+	return nil
+}
+
+// check looks for what is wrong with the flags, before anything is worked out.
+func (o *marginOptions) check(cmd *cobra.Command) error {
+	for _, name := range []string{"png", "svg", "csv", "measure", "workers"} {
+		if o.grid == "" && cmd.Flags().Changed(name) {
+			return fmt.Errorf("--%s is for a map; there is no --map", name)
+		}
+	}
+	switch o.measure {
+	case "damping":
+	case "radius":
+		o.options.Measure = margin.Radius
+	default:
+		return fmt.Errorf("--measure %q: allowed are damping and radius", o.measure)
+	}
+	if o.options.Workers < 0 {
+		return fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.options.Workers)
+	}
+	for _, f := range o.files(nil) {
+		if _, err := os.Lstat(f.path); err == nil && !o.force {
+			return fmt.Errorf("--%s: %s: %w; --force overwrites it", f.flag, f.path, fs.ErrExist)
+		}
+	}
+	return nil
+}
+
+// outputFile is a file that a flag asks for, and what goes into it.
+type outputFile struct {
+	flag, path string
+	data       func() ([]byte, error)
+}
+
+func (o *marginOptions) files(g *margin.Grid) []outputFile {
+	var files []outputFile
+	add := func(flag, path string, data func() ([]byte, error)) {
+		if path != "" {
+			files = append(files, outputFile{flag, path, data})
+		}
+	}
+	add("png", o.png, func() ([]byte, error) { return g.Figure().PNG() })
+	add("svg", o.svg, func() ([]byte, error) { return g.Figure().SVG() })
+	add("csv", o.csv, func() ([]byte, error) { return g.CSV(), nil })
+	return files
+}
+
+// chart draws the map.
+func (o *marginOptions) chart(cmd *cobra.Command, s *scenarios.Scenario, bar *progress) error {
+	x, y, err := margin.ParseMap(s, o.grid)
+	if err != nil {
+		return fmt.Errorf("--map: %w", err)
+	}
+	for _, f := range o.files(nil) {
+		if sameFile(f.path, s.Name) {
+			return fmt.Errorf("--%s %s is the scenario itself; choose another name", f.flag, f.path)
+		}
+	}
+	g, err := margin.Map(cmd.Context(), s, x, y, o.options)
+	bar.clear()
+	broken := errors.Is(err, context.Canceled)
+	if err != nil && !broken {
+		return err
+	}
+	if o.json {
+		err = writeJSON(cmd.OutOrStdout(), g)
+	} else {
+		err = g.Draw(cmd.OutOrStdout(), columns())
+	}
+	if err != nil {
+		return &failure{err}
+	}
+	if err := o.write(g); err != nil {
+		return err
+	}
+	if broken {
+		return errVerdict
+	}
+	return nil
+}
+
+func (o *marginOptions) write(g *margin.Grid) error {
+	for _, f := range o.files(g) {
+		data, err := f.data()
+		if err == nil {
+			err = figure.WriteFile(f.path, data, o.force)
+		}
+		if err != nil {
+			return &failure{fmt.Errorf("--%s: %w", f.flag, err)}
+		}
+	}
+	return nil
+}
+
+// columns is how wide the terminal is; 80 where there is none.
+func columns() int {
+	if wide, _, err := term.GetSize(int(os.Stdout.Fd())); err == nil {
+		return wide
+	}
+	return 80
+}

@@ -1,0 +1,224 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io/fs"
+	"math"
+	"os"
+	"runtime"
+	"strings"
+	"time"
+
+	"github.com/spf13/cobra"
+
+	"antelag/scenarios"
+	"antelag/scenarios/quantity"
+	"antelag/scenarios/report/figure"
+	"antelag/scenarios/study"
+	"antelag/scenarios/study/tune"
+)
+
+// tuneOptions are the flags of tune.
+type tuneOptions struct {
+	options                        tune.Options
+	energy, delay, velocity, noise string
+	time                           string
+	law, record, write, png        string
+	force, json                    bool
+}
+
+func newTune() *cobra.Command {
+	o := &tuneOptions{}
+	cmd := &cobra.Command{
+		Use:   "tune SCENARIO",
+		Short: "find the settings that are best in the worst case over [spread]",
+		Long: `Find the settings of one or more compensators with which a figure is best in the
+worst case over draws from [spread], and with which limits hold: no run may trip,
+the scenario as it is must meet its [accept], and energy margin, delay margin,
+command velocity and noise gain must be within what is asked for.
+
+The search goes wide, then close, and is the same for a seed and any number of
+workers. --record keeps all that was tried; the same command goes on with it.
+--write makes a new scenario file of the best. Exit 0 when a setting passes.
+
+` + cautions,
+		Args:              oneScenario("tune"),
+		ValidArgsFunction: completeScenario,
+		RunE:              o.run,
+	}
+	f := cmd.Flags()
+	f.StringArrayVar(&o.options.Sets, "set", nil, setHelp)
+	f.StringArrayVar(&o.options.Over, "over", nil, "tune a setting, `SETTING=a:b` or SETTING=a:b:log; may be repeated")
+	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "the lane that is judged")
+	f.StringVar(&o.options.Figure, "figure", "", "the figure that is made small (default response_error, or nrmse without a structure)")
+	f.Float64Var(&o.options.Quantile, "quantile", 1, "the share of the runs that it stands for; 1 is the worst case")
+	f.IntVar(&o.options.Draws, "draws", 20, "how many draws from [spread] a setting is judged by")
+	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
+	f.Int64Var(&o.options.Seed, "seed", 1, "seed of draws and search")
+	f.StringVar(&o.energy, "energy-margin", "", "least energy margin over all runs (default that of [accept])")
+	f.StringVar(&o.delay, "delay-margin", "0 s", "least delay margin; 0 s: the loop must be stable")
+	f.StringVar(&o.velocity, "command-velocity", "", "largest velocity that is commanded, like \"0.5 m/s\" (default what trips the channel)")
+	f.StringVar(&o.noise, "noise-gain", "", "largest gain of the command over a target of up to 50 Hz, like 8")
+	f.Int64Var(&o.options.Runs, "runs", 0, "about how many runs may be made")
+	f.StringVar(&o.time, "time", "", "how long the search may take, like \"20 s\"")
+	f.IntVar(&o.options.Workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
+	f.StringVar(&o.record, "record", "", "keep all that was tried in this CSV `file`, and go on with it")
+	f.StringVar(&o.write, "write", "", "write the scenario with the best settings to this `file`")
+	f.StringVar(&o.png, "png", "", "draw accuracy against margin into this `file`, .png or .svg")
+	f.BoolVar(&o.force, "force", false, "overwrite existing files")
+	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
+	return cmd
+}
+
+func (o *tuneOptions) run(cmd *cobra.Command, args []string) error {
+	p, err := o.prepare(args[0])
+	if err != nil {
+		return err
+	}
+	var record *tune.Record
+	if o.record != "" {
+		if record, err = p.OpenRecord(o.record, version(), o.force); err != nil {
+			return fileError("--record", err)
+		}
+		defer record.Close() //nolint:errcheck // every row is out when it has been appended
+	}
+	r, err := o.search(cmd.Context(), p, record)
+	if errors.Is(err, tune.ErrNothingRan) || r == nil || r.Best == nil {
+		return &failure{err}
+	}
+	if e := o.print(cmd, r); e != nil {
+		return &failure{e}
+	}
+	if e := o.files(r); err == nil {
+		err = e
+	}
+	switch {
+	case err != nil && !errors.Is(err, context.Canceled):
+		return &failure{err}
+	case err != nil || !r.Pass() || cmd.Context().Err() != nil:
+		return errVerdict
+	}
+	return nil
+}
+
+// prepare reads everything that can be wrong before anything is written.
+func (o *tuneOptions) prepare(name string) (*tune.Problem, error) {
+	for _, path := range []string{o.write, o.png} {
+		if _, err := os.Lstat(path); path != "" && err == nil && !o.force {
+			return nil, fmt.Errorf("%s: %w; --force overwrites it", path, fs.ErrExist)
+		}
+	}
+	if err := checkPicture(o.png, o.force); err != nil {
+		return nil, err
+	}
+	if err := o.readLimits(); err != nil {
+		return nil, err
+	}
+	if o.options.Workers < 0 {
+		return nil, fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.options.Workers)
+	}
+	if o.options.Workers == 0 {
+		o.options.Workers = runtime.GOMAXPROCS(0)
+	}
+	run := runOptions{sets: o.options.Sets}
+	tests, err := run.load([]string{name})
+	if err != nil {
+		return nil, err
+	}
+	p, err := tune.New(tests[0], o.options)
+	if err != nil {
+		return nil, err
+	}
+	for _, path := range []string{o.write, o.png, o.record} {
+		if path != "" && sameFile(path, tests[0].Name) {
+			return nil, fmt.Errorf("%s is the scenario itself; choose another name", path)
+		}
+	}
+	_, err = tests[0].Build()
+	return p, err
+}
+
+// readLimits reads what has a unit, or may be left out.
+func (o *tuneOptions) readLimits() (err error) {
+	limits := &o.options.Limits
+	*limits = tune.NoLimits
+	for _, f := range []struct {
+		flag, text string
+		dim        quantity.Dim
+		low        float64
+		to         *float64
+	}{
+		{"energy-margin", o.energy, quantity.None, math.Inf(-1), &limits.EnergyMargin},
+		{"delay-margin", o.delay, quantity.Time, 0, &limits.DelayMargin},
+		{"command-velocity", o.velocity, quantity.Velocity, 0, &limits.CommandVelocity},
+		{"noise-gain", o.noise, quantity.None, 0, &limits.NoiseGain},
+	} {
+		if f.text == "" {
+			continue
+		}
+		if *f.to, err = quantity.ParseAs(strings.TrimSpace(f.text), f.dim); err == nil && *f.to < f.low {
+			err = fmt.Errorf("%s is below 0", f.text)
+		}
+		if err != nil {
+			return fmt.Errorf("--%s: %w", f.flag, err)
+		}
+	}
+	if o.time != "" {
+		seconds, err := quantity.ParseAs(o.time, quantity.Time)
+		if err == nil && !(seconds > 0 && seconds < 1e7) {
+			err = fmt.Errorf("%s is no time to search for", o.time)
+		}
+		if err != nil {
+			return fmt.Errorf("--time: %w", err)
+		}
+		o.options.Time = time.Duration(seconds * float64(time.Second))
+	}
+	if o.options.Runs < 0 {
+		return fmt.Errorf("--runs %d: allowed is a whole number from 1 on", o.options.Runs)
+	}
+	o.options.Law, err = study.ParseLaw(o.law)
+	return err
+}
+
+func (o *tuneOptions) search(ctx context.Context, p *tune.Problem, record *tune.Record) (*tune.Result, error) {
+	bar := newProgress(p.Scenario.Name)
+	defer bar.clear()
+	defer context.AfterFunc(ctx, bar.clear)()
+	p.Progress = bar.report
+	began := time.Now()
+	r, err := p.Search(ctx, record)
+	if r == nil {
+		return nil, err
+	}
+	r.Wall, r.Workers = time.Since(began).Seconds(), p.Workers
+	if err == nil && ctx.Err() == nil {
+		err = r.Again(ctx)
+	}
+	return r, err
+}
+
+func (o *tuneOptions) print(cmd *cobra.Command, r *tune.Result) error {
+	if o.json {
+		return writeJSON(cmd.OutOrStdout(), r)
+	}
+	return r.WriteText(cmd.OutOrStdout(), inColour())
+}
+
+// files writes the new scenario and the picture.
+func (o *tuneOptions) files(r *tune.Result) error {
+	if o.write != "" {
+		s, err := r.Problem.Tuned(r.Best)
+		if err != nil {
+			return err
+		}
+		if err := figure.WriteFile(o.write, []byte(s.Resolved()), o.force); err != nil {
+			return fmt.Errorf("--write: %w", err)
+		}
+	}
+	if o.png != "" {
+		return pngError(figure.Save(o.png, r.Picture(), o.force))
+	}
+	return nil
+}

@@ -1,0 +1,166 @@
+package margin
+
+import (
+	"bytes"
+	"fmt"
+	"io"
+	"math"
+	"strings"
+	"text/tabwriter"
+
+	"antelag/rtloop"
+	"antelag/scenarios/quantity"
+)
+
+// WriteText writes the report for people. With colour, the word that decides is
+// coloured too.
+func (r *Report) WriteText(w io.Writer, colour bool) error {
+	var b bytes.Buffer
+	fmt.Fprintf(&b, "%s: the %s lane for small motions about rest%s\n\n", r.Scenario, r.Lane, r.learned())
+	fmt.Fprintf(&b, "%s  spectral radius %.9f\n", r.verdict(colour), float64(r.SpectralRadius))
+	if r.Mode.Frequency.Defined() {
+		fmt.Fprintf(&b, "\nmodes, the least damped first\n")
+		r.modes(&b)
+	}
+	fmt.Fprintf(&b, "\nstability is lost with\n")
+	r.margins(&b)
+	if r.Limiting != "" && len(r.Channels) > 1 {
+		fmt.Fprintf(&b, "%s bears the least extra delay.\n", r.Limiting)
+	}
+	r.further(&b)
+	for i, n := range r.Notes {
+		if i == 0 {
+			b.WriteString("\ntaken for linear\n")
+		}
+		fmt.Fprintf(&b, "  %s\n", n)
+	}
+	_, err := w.Write(b.Bytes())
+	return err
+}
+
+func (r *Report) learned() string {
+	if r.AfterRun {
+		return ",\nadaptive compensators as the run left them"
+	}
+	return ""
+}
+
+func (r *Report) verdict(colour bool) string {
+	word, code := "STABLE", "\x1b[32m"
+	switch {
+	case !r.Stable:
+		word, code = "GROWS", "\x1b[31m"
+	case math.Abs(float64(r.SpectralRadius)-1) <= Neutral:
+		word, code = "ON THE EDGE", "\x1b[33m"
+	}
+	if colour {
+		return code + word + "\x1b[0m"
+	}
+	return word
+}
+
+// percent writes a damping ratio.
+func percent(v rtloop.Figure) string {
+	if !v.Defined() {
+		return "–"
+	}
+	return fmt.Sprintf("%.2f %%", 100*float64(v))
+}
+
+// mostLevels is how many levels of a shape are written out.
+const mostLevels = 8
+
+func (r *Report) modes(b *bytes.Buffer) {
+	w := tabwriter.NewWriter(b, 0, 0, 3, ' ', tabwriter.AlignRight)
+	levels := len(r.Mode.Shape)
+	head := "  frequency\tdamping ratio\t"
+	for i := range min(levels, mostLevels) {
+		head += fmt.Sprintf("level %d\t", i+1)
+	}
+	fmt.Fprintln(w, head)
+	for i := range r.Modes {
+		m := &r.Modes[i]
+		line := "  " + quantity.Format(float64(m.Frequency), quantity.Frequency) + "\t" + percent(m.Damping) + "\t"
+		for k := range min(len(m.Shape), mostLevels) {
+			line += signed(m, k) + "\t"
+		}
+		fmt.Fprintln(w, line)
+	}
+	w.Flush()
+}
+
+// signed is the motion of a level with the sign that it has beside the largest, and
+// its phase where it is neither with it nor against it.
+func signed(m *Mode, k int) string {
+	size, phase := float64(m.Shape[k]), float64(m.Phase[k])
+	if math.Abs(phase) > math.Pi/2 {
+		size, phase = -size, phase-math.Copysign(math.Pi, phase)
+	}
+	if math.Abs(phase) > 0.1 && math.Abs(size) > 0.02 {
+		return fmt.Sprintf("%.2f∠%.0f°", size, phase*180/math.Pi)
+	}
+	return fmt.Sprintf("%.2f", size)
+}
+
+func (r *Report) margins(b *bytes.Buffer) {
+	w := tabwriter.NewWriter(b, 0, 0, 3, ' ', 0)
+	fmt.Fprintln(w, "  channel\textra delay\tat\tdelay then\tforce gain\tat\t")
+	for i := range r.Channels {
+		c := &r.Channels[i]
+		r.margin(w, c.Name, &c.Margins, quantity.Format(float64(c.CriticalDelay), quantity.Time))
+	}
+	if len(r.Channels) > 1 {
+		r.margin(w, "all together", &r.Together, "–")
+	}
+	w.Flush()
+}
+
+func (r *Report) margin(w io.Writer, name string, m *Margins, critical string) {
+	delay, gain := "none found", "none found"
+	at := [2]string{"", ""}
+	if m.DelayMargin.Defined() {
+		delay = quantity.Format(float64(m.DelayMargin), quantity.Time)
+		at[0] = quantity.Format(float64(m.Delays[0].Frequency), quantity.Frequency)
+	} else {
+		critical = ""
+	}
+	if m.GainMargin.Defined() {
+		gain = quantity.Format(float64(m.GainMargin), quantity.None)
+		at[1] = quantity.Format(float64(m.Gains[0].Frequency), quantity.Frequency)
+	}
+	fmt.Fprintf(w, "  %s\t%s\t%s\t%s\t%s\t%s\t\n", name, delay, at[0], critical, gain, at[1])
+}
+
+// further says where stability comes back, and what the signs of an unstable loop's
+// margins mean.
+func (r *Report) further(b *bytes.Buffer) {
+	if !r.Stable {
+		b.WriteString("The loop grows as it is: delays below nothing and gains below 1 say how much\nquicker the actuator, or weaker the force, would have to be.\n")
+	}
+	say := func(name string, m *Margins) {
+		if len(m.Delays) > 1 {
+			fmt.Fprintf(b, "%s, delay: %s\n", name, path(m.Delays, quantity.Time))
+		}
+		if len(m.Gains) > 1 {
+			fmt.Fprintf(b, "%s, gain: %s\n", name, path(m.Gains, quantity.None))
+		}
+	}
+	for i := range r.Channels {
+		say(r.Channels[i].Name, &r.Channels[i].Margins)
+	}
+	if len(r.Channels) > 1 {
+		say("all together", &r.Together)
+	}
+}
+
+func path(changes []Change, dim quantity.Dim) string {
+	var parts []string
+	for _, c := range changes {
+		word := "lost at "
+		if c.Stable {
+			word = "regained at "
+		}
+		parts = append(parts, word+quantity.Format(float64(c.At), dim))
+	}
+	return strings.Join(parts, ", ")
+}
