@@ -47,6 +47,7 @@ func newRoot() *cobra.Command {
 		newBench(),
 		newRun(),
 		newReplay(),
+		newIdentify(),
 		newMargin(),
 		newSweep(),
 		newGather(), newTune(),

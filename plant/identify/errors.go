@@ -172,10 +172,12 @@ func covariance(cols [][]float64, r []float64, wider *float64) *mat.SymDense {
 	scatter := scattered(cols, r)
 	white := meanSquare(r)
 	a, power := autoregression(r)
-	for _, col := range cols {
-		backwards(col, a)
+	before := make([][]float64, m)
+	for i, col := range cols {
+		before[i] = backwards(col, a)
 	}
 	meat := products(cols)
+	meat.AddSym(meat, products(before))
 	meat.ScaleSym(power*float64(n)/float64(n-m), meat)
 	cov, batch := sandwich(&inverse, meat), sandwich(&inverse, scatter)
 	if naive := white * (inverse.At(0, 0)); naive > 0 {
@@ -287,8 +289,10 @@ func autoregression(r []float64) (a []float64, power float64) {
 	return a, power
 }
 
-// backwards filters by 1/A from the end to the beginning.
-func backwards(x, a []float64) {
+// backwards filters by 1/A from the end to the beginning, and on before it, where
+// the noise of the first samples comes from; that part, back to front, is
+// returned.
+func backwards(x, a []float64) (before []float64) {
 	for k := len(x) - 1; k >= 0; k-- {
 		v := x[k]
 		for i := 0; i < len(a) && k+1+i < len(x); i++ {
@@ -296,6 +300,17 @@ func backwards(x, a []float64) {
 		}
 		x[k] = v
 	}
+	before = make([]float64, min(len(x), 1024))
+	for k := range before {
+		for i, w := range a {
+			if back := k - 1 - i; back >= 0 {
+				before[k] -= w * before[back]
+			} else {
+				before[k] -= w * x[-1-back]
+			}
+		}
+	}
+	return before
 }
 
 func meanSquare(x []float64) float64 {

@@ -91,7 +91,7 @@ func (f *fitter) began(rested, got *state, skip int) bool {
 	early := f.squares(rested, 0, skip) / float64(skip)
 	later := got.rss / float64(len(f.rec.Command)-skip)
 	size := got.gain * spread(got.y)
-	return early <= 2*later+1e-12*size*size
+	return early <= 4*later+1e-12*size*size
 }
 
 func (f *fitter) squares(s *state, from, to int) float64 {

@@ -2,6 +2,7 @@ package identify
 
 import (
 	"math"
+	"math/cmplx"
 
 	"antelag/plant"
 	"antelag/scenarios/kind"
@@ -151,4 +152,10 @@ func (f *Fit) Settings() kind.Values {
 		}
 	}
 	return v
+}
+
+// At is the gain and phase delay, s, of the fit at a frequency, Hz.
+func (f *Fit) At(hz float64) (gain, delay float64) {
+	omega := 2 * math.Pi * hz
+	return cmplx.Abs(f.at(omega)), phaseDelay(f, omega)
 }

@@ -73,7 +73,8 @@ func (f *fitter) starts(s shape) [][]float64 {
 	for _, zeta := range s.zetas() {
 		var best []float64
 		least := math.Inf(1)
-		for _, stretch := range []float64{0.7, 0.85, 1, 1.15, 1.3} {
+		// The total is sought finely: a little off in it outweighs all the rest.
+		for stretch := 0.7; stretch < 1.3; stretch += 0.02 {
 			total := max(stretch*f.first.total, f.rec.Tick/4)
 			for _, part := range []float64{0.02, 0.2, 0.4, 0.6, 0.8, 1} {
 				lag := part * total

@@ -15,10 +15,16 @@ const (
 // is, "lag-delay" becomes a delay alone, which is right in that band, and the
 // standard errors say how far the truth may be: all of it may be lag.
 func (f *fitter) resolve(res *Result) error {
+	full := res.LagDelay
 	if s := res.Second; !(s.Lag.Sigma <= vagueFrom*s.Total.Value) || !(s.Frequency.Sigma <= s.Frequency.Value/2) {
 		s.Vague = true
+		// The search has ended somewhere on a ridge: the lag may be anything from
+		// none to all of the delay, and how it bends is not known.
+		s.Delay.Sigma = max(s.Delay.Sigma, s.Total.Value)
+		s.Lag.Sigma = max(s.Lag.Sigma, s.Total.Value)
+		s.Gain.Sigma = max(s.Gain.Sigma, full.Gain.Sigma)
+		s.Frequency.Sigma, s.Damping.Sigma = math.Inf(1), math.Inf(1)
 	}
-	full := res.LagDelay
 	if full.Lag.Sigma <= vagueFrom*full.Total.Value {
 		return nil
 	}
