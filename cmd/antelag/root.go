@@ -47,7 +47,7 @@ func newRoot() *cobra.Command {
 		newBench(),
 		newRun(),
 		newReplay(),
-		newMargin(),
+		newMargin(), newTempo(),
 		newSweep(),
 		newGather(), newTune(),
 		newCheck(),
