@@ -24,11 +24,7 @@ func (g *Grid) Figure() figure.Figure {
 		},
 	}
 	if g.Measure == Radius {
-<<<<<<< HEAD
-		p.Map.Label, p.Map.Unit, p.Map.Contours = "spectral radius less 1, in millionths", "", g.radiusContours()
-=======
-		p.Map.Label, p.Map.Unit, p.Map.Contours, p.Map.Below = "spectral radius less 1", "10⁻⁶", g.radiusContours(), ""
->>>>>>> h/report
+		p.Map.Label, p.Map.Unit, p.Map.Contours, p.Map.Below = "spectral radius less 1, in millionths", "", g.radiusContours(), ""
 	}
 	for iy := range g.Y.N {
 		row := make([]float64, g.X.N)
