@@ -43,7 +43,7 @@ var levels = []float64{-60, -40, -26}
 // errors: 0.95 if they are honest.
 type coverage struct {
 	gain, delay, lag, total float64
-	vague                          int
+	vague                   int
 }
 
 func cover(t testing.TB, k known, name string, rate, duration, level, memory float64, seeds int) (c coverage) {
