@@ -17,6 +17,7 @@ import (
 	"antelag/scenarios/quantity"
 	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study"
+	"antelag/scenarios/study/margin"
 	"antelag/scenarios/study/tune"
 )
 
@@ -65,7 +66,7 @@ workers. --record keeps all that was tried; the same command goes on with it.
 	f.StringVar(&o.time, "time", "", "how long the search may take, like \"20 s\"")
 	f.IntVar(&o.options.Workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
 	f.StringVar(&o.record, "record", "", "keep all that was tried in this CSV `file`, and go on with it")
-	f.StringVar(&o.write, "write", "", "write the scenario with the best settings to this `file`")
+	f.StringVar(&o.write, "write", "", "write the scenario with the best settings, if they pass, to this `file`")
 	f.StringVar(&o.png, "png", "", "draw accuracy against margin into this `file`, .png or .svg")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
@@ -73,7 +74,7 @@ workers. --record keeps all that was tried; the same command goes on with it.
 }
 
 func (o *tuneOptions) run(cmd *cobra.Command, args []string) error {
-	p, err := o.prepare(args[0])
+	p, err := o.prepare(cmd, args[0])
 	if err != nil {
 		return err
 	}
@@ -85,7 +86,7 @@ func (o *tuneOptions) run(cmd *cobra.Command, args []string) error {
 		defer record.Close() //nolint:errcheck // every row is out when it has been appended
 	}
 	r, err := o.search(cmd.Context(), p, record)
-	if errors.Is(err, tune.ErrNothingRan) || r == nil || r.Best == nil {
+	if r == nil || r.Best == nil {
 		return &failure{err}
 	}
 	if e := o.print(cmd, r); e != nil {
@@ -104,7 +105,7 @@ func (o *tuneOptions) run(cmd *cobra.Command, args []string) error {
 }
 
 // prepare reads everything that can be wrong before anything is written.
-func (o *tuneOptions) prepare(name string) (*tune.Problem, error) {
+func (o *tuneOptions) prepare(cmd *cobra.Command, name string) (*tune.Problem, error) {
 	for _, path := range []string{o.write, o.png} {
 		if _, err := os.Lstat(path); path != "" && err == nil && !o.force {
 			return nil, fmt.Errorf("%s: %w; --force overwrites it", path, fs.ErrExist)
@@ -127,6 +128,9 @@ func (o *tuneOptions) prepare(name string) (*tune.Problem, error) {
 	if err != nil {
 		return nil, err
 	}
+	if err := o.readMargin(cmd, tests[0]); err != nil {
+		return nil, err
+	}
 	p, err := tune.New(tests[0], o.options)
 	if err != nil {
 		return nil, err
@@ -138,6 +142,27 @@ func (o *tuneOptions) prepare(name string) (*tune.Problem, error) {
 	}
 	_, err = tests[0].Build()
 	return p, err
+}
+
+// readMargin has the delay margin taken where the loop has one. That a loop is
+// none, or has parts that cannot be linearized, matters only to who asks for a
+// margin.
+func (o *tuneOptions) readMargin(cmd *cobra.Command, s *scenarios.Scenario) error {
+	asked := cmd.Flags().Changed("delay-margin")
+	_, err := margin.Of(cmd.Context(), s, margin.Options{Lane: o.options.Lane, Quick: true})
+	switch {
+	case err == nil:
+		o.options.Delay = func(ctx context.Context, s *scenarios.Scenario) (float64, error) {
+			r, err := margin.Of(ctx, s, margin.Options{Lane: o.options.Lane, Quick: true})
+			if err != nil {
+				return 0, err
+			}
+			return r.LeastDelay(), nil
+		}
+	case asked:
+		return fmt.Errorf("--delay-margin: %w", err)
+	}
+	return nil
 }
 
 // readLimits reads what has a unit, or may be left out.
@@ -208,7 +233,7 @@ func (o *tuneOptions) print(cmd *cobra.Command, r *tune.Result) error {
 
 // files writes the new scenario and the picture.
 func (o *tuneOptions) files(r *tune.Result) error {
-	if o.write != "" {
+	if o.write != "" && r.Pass() { // what does not pass is not to be used
 		s, err := r.Problem.Tuned(r.Best)
 		if err != nil {
 			return err

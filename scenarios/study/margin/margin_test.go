@@ -387,3 +387,18 @@ func BenchmarkMap(b *testing.B) {
 		})
 	}
 }
+
+func FuzzParseMap(f *testing.F) {
+	s, err := scenarios.Load("archive")
+	if err != nil {
+		f.Fatal(err)
+	}
+	f.Add("damper.actuator.delay=0:20 ms:5,loop.rate=500 Hz:900 Hz:3")
+	f.Add("a=1:2:3:log,=")
+	f.Fuzz(func(t *testing.T, text string) {
+		x, y, err := ParseMap(s, text)
+		if err == nil && (x.N < 2 || y.N < 2 || !(x.Low < x.High) || !(y.Low < y.High)) {
+			t.Errorf("%q is read as %v, %v", text, x, y)
+		}
+	})
+}

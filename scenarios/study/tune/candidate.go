@@ -30,65 +30,86 @@ type job struct {
 }
 
 // evaluate runs a job. Its runs are dealt out in parts, each of which takes a
-// place among the workers.
+// place among the workers, and so does each measure that needs no run.
 func (j *job) evaluate(ctx context.Context, places chan struct{}, parts int) (*Candidate, error) {
 	changes := [][]scenarios.Change{j.p.changes(j.values)}
 	for _, v := range j.variations {
 		changes = append(changes, append(j.p.changes(j.values), v...))
 	}
+	c := &Candidate{Values: j.values, Judged: len(j.variations), Figure: math.NaN(), Measured: make([]float64, len(j.p.Measures))}
+	s, err := j.p.Scenario.With(changes[0]...)
+	if err == nil {
+		_, err = s.BuildLoop(j.p.Lane)
+	}
+	if err != nil {
+		return c.refuse(err)
+	}
 	judged := make([]study.Judged, len(changes))
 	parts = min(max(parts, 1), len(changes))
-	errs := make([]error, parts)
+	errs := make([]error, parts+len(j.p.Measures))
 	var group sync.WaitGroup
-	for i := range parts {
+	work := func(err *error, do func() error) {
 		group.Go(func() {
 			places <- struct{}{}
 			defer func() { <-places }()
-			from, end := i*len(changes)/parts, (i+1)*len(changes)/parts
-			var some []study.Judged
-			if some, errs[i] = study.Judge(ctx, j.p.Scenario, j.p.Lane, changes[from:end]); errs[i] == nil {
-				copy(judged[from:], some)
-			}
+			*err = do()
 		})
 	}
-	group.Wait()
-	if err := errors.Join(errs...); err != nil {
-		return nil, firstError(errs)
+	for i := range parts {
+		from, end := i*len(changes)/parts, (i+1)*len(changes)/parts
+		work(&errs[i], func() error {
+			some, err := study.Judge(ctx, j.p.Scenario, j.p.Lane, changes[from:end])
+			copy(judged[from:], some)
+			return err
+		})
 	}
-	return j.p.sumUp(ctx, j.values, judged)
+	for i := range j.p.Measures {
+		if m := &j.p.Measures[i]; m.alone != nil {
+			work(&errs[parts+i], func() (err error) {
+				c.Measured[i], err = m.alone(ctx, s)
+				return err
+			})
+		}
+	}
+	group.Wait()
+	if i := slices.IndexFunc(errs, func(e error) bool { return e != nil }); i >= 0 {
+		return nil, errs[i]
+	}
+	if judged[0].Refused != nil {
+		return c.refuse(judged[0].Refused)
+	}
+	j.p.sumUp(c, judged)
+	return c, nil
 }
 
-func firstError(errs []error) error {
-	return errs[slices.IndexFunc(errs, func(e error) bool { return e != nil })]
-}
-
-// sumUp makes a candidate of its runs, of which the first is the scenario as it
-// is.
-func (p *Problem) sumUp(ctx context.Context, values []float64, judged []study.Judged) (*Candidate, error) {
-	c := &Candidate{Values: values, Judged: len(judged) - 1, Figure: math.NaN(), Measured: make([]float64, len(p.Measures))}
+// refuse makes a candidate of settings of which no test can be built; another
+// error stays one.
+func (c *Candidate) refuse(err error) (*Candidate, error) {
+	var bad *scenarios.Error
+	if !errors.As(err, &bad) {
+		return nil, err
+	}
+	c.Refused = err.Error()
 	for i := range c.Measured {
 		c.Measured[i] = math.NaN()
 	}
-	if why := judged[0].Refused; why != nil {
-		c.Refused = why.Error()
-		return c, nil
-	}
+	return c, nil
+}
+
+// sumUp completes a candidate by its runs, of which the first is the scenario as
+// it is.
+func (p *Problem) sumUp(c *Candidate, judged []study.Judged) {
 	var bad []float64
 	for i := range judged {
 		bad = append(bad, p.Column.Bad(p.value(&p.Column, &judged[i])))
 	}
 	slices.Sort(bad)
 	c.Figure = p.Column.Good(bad[max(0, int(math.Ceil(p.Quantile*float64(len(bad))))-1)])
-	s, err := p.Scenario.With(p.changes(values)...)
-	if err != nil {
-		return nil, err
-	}
 	for i := range p.Measures {
-		if c.Measured[i], err = p.Measures[i].get(ctx, s, judged); err != nil {
-			return nil, err
+		if m := &p.Measures[i]; m.of != nil {
+			c.Measured[i] = m.of(judged)
 		}
 	}
-	return c, nil
 }
 
 // value is a figure of a run, NaN where that did not come to its end.

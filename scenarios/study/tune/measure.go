@@ -22,7 +22,11 @@ type Measure struct {
 	limit string  // the limit for people, where say would not do
 	unit  float64 // what a miss is measured by where the limit is 0
 	say   func(v float64) string
-	get   func(ctx context.Context, s *scenarios.Scenario, judged []study.Judged) (float64, error)
+
+	// One of these takes it: of the runs, the first of which is the scenario as it
+	// is, or of that without any.
+	of    func(judged []study.Judged) float64
+	alone func(ctx context.Context, s *scenarios.Scenario) (float64, error)
 }
 
 // Pass reports whether a value keeps the limit. What is undefined does not.
@@ -91,9 +95,7 @@ func share(v float64) string { return accept.Share(rtloop.Figure(v)) }
 func (p *Problem) measures() []Measure {
 	out := []Measure{{
 		limit: "all", Name: "completed", Label: "runs that complete", Limit: 1, AtLeast: true, Over: true, unit: 1, say: share,
-		get: func(_ context.Context, s *scenarios.Scenario, judged []study.Judged) (float64, error) {
-			return survived(s, judged), nil
-		},
+		of: func(judged []study.Judged) float64 { return survived(p.Scenario.Loop.Num("duration"), judged) },
 	}}
 	if p.Scenario.Substructure != nil {
 		out = append(out, p.energy())
@@ -111,9 +113,7 @@ func (p *Problem) measures() []Measure {
 		out = append(out, Measure{
 			limit: judged.Allowed(),
 			Name:  "nominal_" + c.Figure, Label: c.Label, Limit: p.Scenario.Accept.Num(c.Figure), unit: 1e-6, say: c.Size,
-			get: func(_ context.Context, _ *scenarios.Scenario, judged []study.Judged) (float64, error) {
-				return math.Abs(p.value(c, &judged[0])), nil
-			},
+			of: func(judged []study.Judged) float64 { return math.Abs(p.value(c, &judged[0])) },
 		})
 	}
 	return out
@@ -121,7 +121,7 @@ func (p *Problem) measures() []Measure {
 
 // survived is the share of the test that all runs got through: 1 only if all
 // came to their end.
-func survived(s *scenarios.Scenario, judged []study.Judged) float64 {
+func survived(duration float64, judged []study.Judged) float64 {
 	sum := 0.0
 	for i := range judged {
 		if judged[i].Refused == nil && judged[i].Outcome == rtloop.Completed {
@@ -129,22 +129,22 @@ func survived(s *scenarios.Scenario, judged []study.Judged) float64 {
 			continue
 		}
 		if judged[i].Refused == nil {
-			sum += 0.99 * judged[i].Ran / s.Loop.Num("duration")
+			sum += 0.99 * judged[i].Ran / duration
 		}
 	}
 	return sum / float64(len(judged))
 }
 
 // worst is the worst value of a figure over all runs, NaN where one has none.
-func (p *Problem) worst(figure string) func(context.Context, *scenarios.Scenario, []study.Judged) (float64, error) {
+func (p *Problem) worst(figure string) func([]study.Judged) float64 {
 	for i := range p.columns {
 		if c := &p.columns[i]; c.Figure == figure && c.Channel == "" {
-			return func(_ context.Context, _ *scenarios.Scenario, judged []study.Judged) (float64, error) {
+			return func(judged []study.Judged) float64 {
 				bad := math.Inf(-1)
 				for k := range judged {
 					bad = max(bad, c.Bad(p.value(c, &judged[k])))
 				}
-				return c.Good(bad), nil
+				return c.Good(bad)
 			}
 		}
 	}
@@ -162,15 +162,13 @@ func (p *Problem) energy() Measure {
 		allowed = j.Allowed()
 	}
 	return Measure{limit: allowed, Name: "energy_margin", Label: "energy margin, least", Limit: limit, AtLeast: true, Over: true, unit: 1,
-		say: func(v float64) string { return accept.Margin(rtloop.Figure(v)) }, get: p.worst("energy_margin")}
+		say: func(v float64) string { return accept.Margin(rtloop.Figure(v)) }, of: p.worst("energy_margin")}
 }
 
 func (p *Problem) delay() Measure {
 	return Measure{Name: "delay_margin_s", Label: "delay margin", Limit: p.Limits.DelayMargin, AtLeast: true, unit: 1e-3,
-		say: func(v float64) string { return quantity.Format(v, quantity.Time) },
-		get: func(ctx context.Context, s *scenarios.Scenario, _ []study.Judged) (float64, error) {
-			return p.Delay(ctx, s)
-		}}
+		say:   func(v float64) string { return quantity.Format(v, quantity.Time) },
+		alone: p.Delay}
 }
 
 // velocity is limited by what was asked for, or by what trips a channel.
@@ -184,13 +182,11 @@ func (p *Problem) velocity() Measure {
 		}
 	}
 	return Measure{Name: "command_velocity_m_s", Label: "command velocity", Limit: limit, Over: true, unit: 1e-3,
-		say: func(v float64) string { return quantity.Format(v, quantity.Velocity) }, get: p.worst("peak_command_velocity")}
+		say: func(v float64) string { return quantity.Format(v, quantity.Velocity) }, of: p.worst("peak_command_velocity")}
 }
 
 func (p *Problem) noise() Measure {
 	return Measure{Name: "noise_gain", Label: "noise gain", Limit: p.Limits.NoiseGain, unit: 1,
-		say: func(v float64) string { return quantity.Format(v, quantity.None) },
-		get: func(_ context.Context, s *scenarios.Scenario, _ []study.Judged) (float64, error) {
-			return NoiseGain(s, p.Lane)
-		}}
+		say:   func(v float64) string { return quantity.Format(v, quantity.None) },
+		alone: func(_ context.Context, s *scenarios.Scenario) (float64, error) { return NoiseGain(s, p.Lane) }}
 }

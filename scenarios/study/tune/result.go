@@ -44,7 +44,7 @@ func (s *searcher) result() (*Result, error) {
 	if len(all) == 0 {
 		return r, ErrNothingRan
 	}
-	r.Best, r.All = all[0], all
+	r.Best, r.All = s.choose(all), all
 	r.Front = s.front(all)
 	if !s.Pass(r.Best) {
 		r.Stands = s.obstacles(all)
@@ -54,6 +54,32 @@ func (s *searcher) result() (*Result, error) {
 
 // Pass reports whether there is a candidate that meets all limits.
 func (r *Result) Pass() bool { return r.Best != nil && r.Problem.Pass(r.Best) }
+
+// alike is how near two figures are that count as equally good.
+const alike = 0.01
+
+// choose takes the best of all candidates; of those that are as good but for 1 %,
+// the one with the most margin, as accuracy that cannot be told apart is not worth
+// any.
+func (s *searcher) choose(all []*Candidate) *Candidate {
+	best, m := all[0], s.margin()
+	if !s.Pass(best) {
+		return best
+	}
+	least := s.Column.Bad(best.Figure)
+	rank := func(c *Candidate) float64 {
+		if s.Measures[m].AtLeast {
+			return -c.Measured[m]
+		}
+		return c.Measured[m]
+	}
+	for _, c := range all {
+		if s.Pass(c) && s.Column.Bad(c.Figure) <= least+alike*math.Abs(least) && rank(c) < rank(best) {
+			best = c
+		}
+	}
+	return best
+}
 
 // obstacles are the limits that the best of all candidates misses, the worst
 // missed first.

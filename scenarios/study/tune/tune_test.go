@@ -187,7 +187,7 @@ func TestSearchFindsWhatAGridFinds(t *testing.T) {
 func TestWholeNumbersAreAllTried(t *testing.T) {
 	p := problem(t, scene(t), Options{Over: []string{orders}, Lane: "fit", Draws: 3})
 	r := search(t, p, nil)
-	if len(r.All) != 4 || r.Best != r.All[0] {
+	if len(r.All) != 4 || r.Best.Figure > 1.01*r.All[0].Figure {
 		t.Errorf("%d tried", len(r.All))
 	}
 	mixed := problem(t, scene(t), Options{Over: []string{orders, "lane.fit.compensator.delay=1 ms:30 ms"}, Lane: "fit", Draws: 3})
