@@ -6,7 +6,9 @@ import (
 	"slices"
 )
 
-// Group is the stretches of a record that move about equally far.
+// Group is the stretches of a record that move about equally far. Where they also
+// move at other frequencies, as in a sweep, what the fit does not explain there
+// shows too.
 type Group struct {
 	Amplitude  float64 // of a sine of the same rms, m
 	Speed      float64 // largest speed that the fit sees in them, m/s

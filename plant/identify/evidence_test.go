@@ -42,8 +42,8 @@ var levels = []float64{-60, -40, -26}
 // coverage is the share of seeds for which the truth lies within 1.96 standard
 // errors: 0.95 if they are honest.
 type coverage struct {
-	gain, delay, lag, total, phase float64
-	vague                          int
+	gain, delay, lag, total float64
+	vague                   int
 }
 
 func cover(t testing.TB, k known, name string, rate, duration, level, memory float64, seeds int) (c coverage) {
@@ -83,7 +83,7 @@ func BenchmarkCoverage(b *testing.B) {
 			for _, m := range motions {
 				for _, level := range levels {
 					for _, memory := range []float64{0, 0.9} {
-						c := cover(b, k, m.name, 256, 30, level, memory, 200)
+						c := cover(b, k, m.name, 256, 12, level, memory, 200)
 						fmt.Printf("%-12s %-6s %4g dB memory %.1f: %s\n", k.kind, m.name, level, memory, c)
 					}
 				}

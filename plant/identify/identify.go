@@ -30,7 +30,7 @@ type Options struct {
 	// Segment is how many samples a segment of the frequency response has; 0
 	// takes about an eighth of the record and at most 20 s.
 	Segment int
-	// Most is how many samples the fit takes at most, 0 for 2^20; from a longer
+	// Most is how many samples the fit takes at most, 0 for 2^18; from a longer
 	// record, the stretch that moves the most. The frequency response is of the
 	// whole record all the same.
 	Most int
@@ -118,7 +118,7 @@ func Identify(ctx context.Context, rec Record, o Options) (*Result, error) {
 	n := len(rec.Command)
 	most := o.Most
 	if most <= 0 {
-		most = 1 << 20
+		most = 1 << 18
 	}
 	from, to := loudest(rec.Command, max(most, fewest))
 	res := &Result{Samples: n, Fitted: to - from, From: from, Tick: rec.Tick}

@@ -18,9 +18,9 @@ func found(e Estimate, truth, tolerance float64) (off float64, ok bool) {
 // row finds a known actuator again and returns a line of the table; the second
 // value says whether delay is within 0.1 ms, and lag and gain within 2 %, or
 // three standard errors.
-func row(t testing.TB, k known, name string, rate, level float64) (string, bool) {
+func row(t testing.TB, k known, name string, rate, duration, level float64) (string, bool) {
 	t.Helper()
-	u := motion(name, rate, 30)
+	u := motion(name, rate, duration)
 	y := noisy(carried(build(t, 1/rate, plant.Ramp, k.kind, k.set), plant.NewSpecimen(), u), level, 0, 5)
 	f := k.own(identified(t, Record{Command: u, Measured: y, Tick: 1 / rate}))
 	delay, lag, gain := k.truth()
@@ -41,12 +41,12 @@ func TestKnownActuatorsAreFoundAgain(t *testing.T) {
 	for _, k := range linear {
 		for _, m := range motions {
 			for _, level := range levels {
-				if line, ok := row(t, k, m.name, 256, level); !ok {
+				if line, ok := row(t, k, m.name, 256, 15, level); !ok {
 					t.Error(line)
 				}
 			}
 		}
-		if line, ok := row(t, k, "sweep", 2048, -40); !ok {
+		if line, ok := row(t, k, "sweep", 2048, 8, -40); !ok {
 			t.Error(line)
 		}
 	}
@@ -59,7 +59,7 @@ func BenchmarkTable(b *testing.B) {
 			for _, rate := range []float64{256, 1024, 2048, 8192} {
 				for _, m := range motions {
 					for _, level := range levels {
-						line, ok := row(b, k, m.name, rate, level)
+						line, ok := row(b, k, m.name, rate, 30, level)
 						fmt.Println(line, ok)
 					}
 				}
@@ -117,9 +117,9 @@ func TestRecordsMayBeginInTheMiddle(t *testing.T) {
 func TestTheRightKindIsTaken(t *testing.T) {
 	for _, k := range linear {
 		for seed := range uint64(6) {
-			u := motion("sweep", 512, 20)
-			y := noisy(carried(build(t, 1.0/512, plant.Ramp, k.kind, k.set), plant.NewSpecimen(), u), -40, 0.5, seed)
-			if r := identified(t, Record{Command: u, Measured: y, Tick: 1.0 / 512}); r.Best().Kind != k.kind {
+			u := motion("sweep", 256, 20)
+			y := noisy(carried(build(t, 1.0/256, plant.Ramp, k.kind, k.set), plant.NewSpecimen(), u), -40, 0.5, seed)
+			if r := identified(t, Record{Command: u, Measured: y, Tick: 1.0 / 256}); r.Best().Kind != k.kind {
 				t.Errorf("seed %d: %s was taken for %s, evidence %.1f", seed, k.kind, r.Best().Kind, r.Evidence)
 			}
 		}
@@ -133,12 +133,12 @@ func TestStandardErrorsAreHonest(t *testing.T) {
 	const seeds = 30
 	for _, k := range linear {
 		delay, lag, gain := k.truth()
-		u := motion("noise", 256, 12)
-		y := carried(build(t, 1.0/256, plant.Ramp, k.kind, k.set), plant.NewSpecimen(), u)
+		u := motion("noise", 128, 12)
+		y := carried(build(t, 1.0/128, plant.Ramp, k.kind, k.set), plant.NewSpecimen(), u)
 		for _, memory := range []float64{0, 0.9} {
 			var z [4]float64
 			for seed := range uint64(seeds) {
-				f := k.own(identified(t, Record{Command: u, Measured: noisy(y, -40, memory, seed), Tick: 1.0 / 256}))
+				f := k.own(identified(t, Record{Command: u, Measured: noisy(y, -40, memory, seed), Tick: 1.0 / 128}))
 				for i, c := range []struct {
 					e     Estimate
 					truth float64
@@ -153,5 +153,16 @@ func TestStandardErrorsAreHonest(t *testing.T) {
 				}
 			}
 		}
+	}
+}
+
+// BenchmarkIdentify is the fit of the longest stretch that is taken, 2^18 samples.
+func BenchmarkIdentify(b *testing.B) {
+	const rate = 2048.0
+	u := sweep(rate, (1<<18)/rate, 0.2, 8, 0.008)
+	y := noisy(carried(build(b, 1/rate, plant.Ramp, linear[0].kind, linear[0].set), plant.NewSpecimen(), u), -60, 0, 1)
+	b.ReportAllocs()
+	for b.Loop() {
+		identified(b, Record{Command: u, Measured: y, Tick: 1 / rate})
 	}
 }

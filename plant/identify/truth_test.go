@@ -113,7 +113,7 @@ func TestHydraulicTransferFunction(t *testing.T) {
 // 0.1 ms or three standard errors. Motions are small enough that the valve, whose
 // flow depends on the load, is nearly linear, and large enough that friction is.
 func TestHydraulicActuatorsAreAsLateAsTheyAre(t *testing.T) {
-	const rate = 512.0
+	const rate = 256.0
 	for _, c := range []struct {
 		name      string
 		set       kind.Values

@@ -77,10 +77,10 @@ func TestLogsOfRunGiveTheActuatorBack(t *testing.T) {
 		sets       []string
 		delay, lag float64
 	}{
-		{"tracking", nil, 7e-3, 5e-3},
-		{"in a loop", []string{"loop.rate=1024 Hz"}, 8e-3, 6e-3},
-		{"slowed down", []string{"loop.slowdown=4", "loop.rate=512 Hz"}, 7e-3, 5e-3},
-		{"held", []string{"loop.hold=step", "loop.rate=512 Hz"}, 7e-3, 5e-3},
+		{"tracking", []string{"loop.duration=10 s"}, 7e-3, 5e-3},
+		{"in a loop", []string{"loop.rate=512 Hz", "loop.duration=12 s"}, 8e-3, 6e-3},
+		{"slowed down", []string{"loop.slowdown=4", "loop.rate=512 Hz", "loop.duration=10 s"}, 7e-3, 5e-3},
+		{"held", []string{"loop.hold=step", "loop.rate=512 Hz", "loop.duration=10 s"}, 7e-3, 5e-3},
 	} {
 		scenario := "tracking"
 		if c.name == "in a loop" {
@@ -106,7 +106,7 @@ func TestTheBlockLoads(t *testing.T) {
 		{nil, "lag-delay"},
 		{[]string{"actuator.actuator.kind=second-order", "actuator.actuator.frequency=15 Hz", "actuator.actuator.damping_ratio=0.6"}, "second-order"},
 	} {
-		r := of(t, logged(t, "tracking", append(c.sets, "loop.rate=1024 Hz")...), Options{})
+		r := of(t, logged(t, "tracking", append(c.sets, "loop.rate=512 Hz", "loop.duration=20 s")...), Options{})
 		if err := r.Usable(); err != nil {
 			t.Fatal(err)
 		}
