@@ -102,7 +102,7 @@ func both(tb testing.TB, s *scenarios.Scenario) (fast, exact float64) {
 
 // loops is how many random loops are looked at, and 5/2 cells of maps each. The full
 // evidence is -loops 200; it takes minutes.
-var loops = flag.Int("loops", 40, "how many random loops to look at, and cells of a map by 5/2")
+var loops = flag.Int("loops", 16, "how many random loops to look at, and cells of a map by 5/2")
 
 // The characteristic function and the eigenvalues of the state matrix have nothing in
 // common but the parts; they come to the same.
