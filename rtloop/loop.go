@@ -342,10 +342,7 @@ func (l *Loop) setLoad() {
 	} else {
 		l.external[l.cfg.Level-1] = l.drive
 	}
-	load := l.load[:len(l.external)]
-	for i, p := range l.external { // a copy of so few costs more than it moves
-		load[i] = p
-	}
+	copy(l.load, l.external)
 	for j := range l.channels {
 		s.AddForce(l.load, j, l.channels[j].force)
 	}
