@@ -76,18 +76,20 @@ func (c coverage) String() string {
 }
 
 // BenchmarkCoverage prints, over 200 seeds, how often the truth lies within 1.96
-// standard errors. Run it with -benchtime 1x.
+// standard errors. Run it with -benchtime 1x; it takes some minutes.
 func BenchmarkCoverage(b *testing.B) {
-	for range b.N {
-		for _, k := range linear {
-			for _, m := range motions {
-				for _, level := range levels {
-					for _, memory := range []float64{0, 0.9} {
-						c := cover(b, k, m.name, 256, 12, level, memory, 200)
-						fmt.Printf("%-12s %-6s %4g dB memory %.1f: %s\n", k.kind, m.name, level, memory, c)
+	for _, k := range linear {
+		for _, m := range motions {
+			b.Run(k.kind+"/"+m.name, func(b *testing.B) {
+				for range b.N {
+					for _, level := range levels {
+						for _, memory := range []float64{0, 0.9} {
+							c := cover(b, k, m.name, 256, 12, level, memory, 200)
+							fmt.Printf("%-12s %-6s %4g dB memory %.1f: %s\n", k.kind, m.name, level, memory, c)
+						}
 					}
 				}
-			}
+			})
 		}
 	}
 }

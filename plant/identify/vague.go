@@ -2,11 +2,10 @@ package identify
 
 import "math"
 
-// vagueFrom is the standard error of the lag, as a share of the total delay,
-// from which the data do not tell delay from lag.
+// Standard errors of the lag, as shares of the total delay: from which the data
+// do not tell delay from lag, and from which they do so poorly.
 const (
-	vagueFrom = 0.5
-	// unsureFrom is where that is said.
+	vagueFrom  = 0.5
 	unsureFrom = 0.1
 )
 
@@ -17,13 +16,7 @@ const (
 func (f *fitter) resolve(res *Result) error {
 	full := res.LagDelay
 	if s := res.Second; !(s.Lag.Sigma <= vagueFrom*s.Total.Value) || !(s.Frequency.Sigma <= s.Frequency.Value/2) {
-		s.Vague = true
-		// The search has ended somewhere on a ridge: the lag may be anything from
-		// none to all of the delay, and how it bends is not known.
-		s.Delay.Sigma = max(s.Delay.Sigma, s.Total.Value)
-		s.Lag.Sigma = max(s.Lag.Sigma, s.Total.Value)
-		s.Gain.Sigma = max(s.Gain.Sigma, full.Gain.Sigma)
-		s.Frequency.Sigma, s.Damping.Sigma = math.Inf(1), math.Inf(1)
+		f.widen(s, full)
 	}
 	if full.Lag.Sigma <= vagueFrom*full.Total.Value {
 		return nil
@@ -41,14 +34,34 @@ func (f *fitter) resolve(res *Result) error {
 	whole := fit.Delay.Value
 	fit.Lag = Estimate{0, min(full.Lag.Sigma, whole)}
 	fit.Delay.Sigma = math.Hypot(fit.Delay.Sigma, fit.Lag.Sigma)
-	// With the lag L: total = phase + L − atan(ωL)/ω, gain = amplitude·√(1+ω²L²).
-	omega := 2 * math.Pi * f.spectrum.speed
-	bend := fit.Lag.Sigma
-	if omega > 0 {
-		bend -= math.Atan(omega*bend) / omega
-	}
-	fit.Total.Sigma = math.Hypot(fit.Total.Sigma, bend)
-	fit.Gain.Sigma = math.Hypot(fit.Gain.Sigma, math.Abs(fit.Gain.Value)*(math.Hypot(1, omega*fit.Lag.Sigma)-1))
+	f.bend(fit)
 	res.LagDelay = fit
 	return nil
+}
+
+// widen makes the errors of a vague second-order fit as large as what it may be
+// wrong by. Its search has ended somewhere on a ridge: the lag may be anything
+// from none to all of the delay, and how it bends is not known. What both kinds
+// know is as sure as that of "lag-delay", beside it.
+func (f *fitter) widen(s, plain *Fit) {
+	s.Vague = true
+	for _, e := range []struct{ mine, other *Estimate }{{&s.Gain, &plain.Gain}, {&s.Total, &plain.Total}, {&s.Phase, &plain.Phase}} {
+		if !(e.mine.Sigma <= e.mine.Value) { // not to be taken seriously
+			e.mine.Sigma = e.other.Sigma
+		}
+	}
+	s.Delay.Sigma, s.Lag.Sigma = s.Total.Value, s.Total.Value
+	s.Frequency.Sigma, s.Damping.Sigma = math.Inf(1), math.Inf(1)
+	f.bend(s)
+}
+
+// bend widens total and gain by what a lag L that is not known does to them:
+// total = phase + L − atan(ωL)/ω, gain = amplitude·√(1+ω²L²).
+func (f *fitter) bend(fit *Fit) {
+	omega, lag := 2*math.Pi*f.spectrum.speed, fit.Lag.Sigma
+	if !(omega > 0) {
+		return
+	}
+	fit.Total.Sigma = math.Hypot(fit.Total.Sigma, lag-math.Atan(omega*lag)/omega)
+	fit.Gain.Sigma = math.Hypot(fit.Gain.Sigma, math.Abs(fit.Gain.Value)*(math.Hypot(1, omega*lag)-1))
 }
