@@ -63,11 +63,18 @@ func (a *matrix) mul(dst, x []float64) {
 	i := 0
 	for k := range a.blocks {
 		s0, s1, s2, s3 := a.blocks[k].product(x)
-		if d := dst[i:]; len(d) >= 4 {
-			d[0], d[1], d[2], d[3] = s0, s1, s2, s3
-		} else {
-			s := [...]float64{s0, s1, s2, s3}
-			copy(d, s[:])
+		switch d := dst[i:]; len(d) { // a copy of so few costs more than it moves
+		default:
+			d[3] = s3
+			fallthrough
+		case 3:
+			d[2] = s2
+			fallthrough
+		case 2:
+			d[1] = s1
+			fallthrough
+		case 1:
+			d[0] = s0
 		}
 		i += 4
 	}

@@ -83,6 +83,11 @@ type Map struct {
 	Z           [][]float64
 	Label, Unit string
 	Contours    []float64
+	// Below, if it is not empty, is what to call the part of the map where Z is
+	// below Edge: it is hatched, and the line of Edge, one of Contours or not, is
+	// drawn bold.
+	Below string
+	Edge  float64
 }
 
 // Write draws the figure as "png" or "svg".

@@ -214,6 +214,7 @@ func (d *drawing) draw() {
 	data := d.plot.DataCanvas(d.box)
 	tx, ty := d.plot.Transforms(&data)
 	if d.cells != nil {
+		d.cells.hatch(data, tx, ty)
 		frame(data)
 		d.cells.bar(data)
 	}

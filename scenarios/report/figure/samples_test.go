@@ -52,7 +52,7 @@ func samples() map[string]Figure {
 		{X: Axis{Label: "frequency", Unit: "Hz", Log: true}, Y: Axis{Label: "delay", Unit: "ms", Low: 0, High: math.NaN()},
 			Lines: []Line{{Name: "actuator", X: hz, Y: late, Points: true, Joined: true}}, Levels: []Level{{Name: "3 Hz", Value: 3, Vertical: true}}},
 	}}
-	m := &Map{Label: "spectral radius", Contours: []float64{1}}
+	m := &Map{Label: "spectral radius", Contours: []float64{1}, Below: "below 1", Edge: 1}
 	for i := range 81 {
 		m.X = append(m.X, float64(i)*0.5)
 		m.Y = append(m.Y, float64(i)*0.25)
