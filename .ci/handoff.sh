@@ -51,18 +51,20 @@ delay = "8 ms"
 kind = "none"
 TOML
 
-# Settings to try, one line each: scenario, then the changes, all split by tabs.
+# Settings to try, one line each: the kind if they are drawn, the scenario, then the
+# changes, all split by tabs.
 "$antelag" describe compensators --json >"$work/kinds.json"
 /usr/bin/python3 - "$work/kinds.json" "$draws" "$seed" "$free" >"$work/cases" <<'PY'
 import json, math, random, sys
 kinds, draws, free = json.load(open(sys.argv[1]))["kinds"], int(sys.argv[2]), sys.argv[4]
 random.seed(int(sys.argv[3]))
 
-def case(scenario, kind, ticks, settings={}):
+# A draw may contradict itself, so there are four for each that is wanted.
+def case(scenario, kind, ticks, settings={}, drawn="-"):
     path = "damper.compensator."
     sets = [path + "kind=" + kind, f"loop.rate={ticks} Hz"]
     sets += [f"{path}{k}={v}" for k, v in settings.items()]
-    print("\t".join([scenario] + sets))
+    print("\t".join([drawn, scenario] + sets))
 
 def draw(s):
     if s.get("words"):
@@ -85,9 +87,9 @@ for k in kinds:
         case(free, k["name"], 2048, {"window": "50 ms"})
     if k["name"] == "adaptive-inverse":
         case(free, k["name"], 2048, {"kp": 0, "ki": "1e5 m^-2*s^-1"})
-    for _ in range(draws if k["settings"] else 0):
+    for _ in range(4 * draws if k["settings"] else 0):
         chosen = {s["name"]: draw(s) for s in k["settings"] if random.random() < 0.5}
-        case(random.choice(["archive", free]), k["name"], random.choice([128, 500, 2048, 10000]), chosen)
+        case(random.choice(["archive", free]), k["name"], random.choice([128, 500, 2048, 10000]), chosen, k["name"])
 PY
 
 # compiled NAME DIR COMPILER…: compiles a handoff strictly, in double and float,
@@ -120,7 +122,9 @@ alone() {
 }
 
 tried=0 refused=0 number=0
-while IFS=$'\t' read -r scenario rest; do
+declare -A drawn=()
+while IFS=$'\t' read -r draw scenario rest; do
+	[ "$draw" = - ] || [ "${drawn[$draw]:-0}" -lt "$draws" ] || continue
 	number=$((number + 1))
 	# Every compiler takes every kind; settings beyond that they take by turns.
 	with=("${compilers[@]}")
@@ -140,6 +144,7 @@ while IFS=$'\t' read -r scenario rest; do
 	compiled "$rest" "$dir" "${with[@]}"
 	alone "$rest" "$dir"
 	tried=$((tried + 1))
+	[ "$draw" = - ] || drawn[$draw]=$((${drawn[$draw]:-0} + 1))
 	rm -rf "$dir"
 done <"$work/cases"
 cat "$work/report"

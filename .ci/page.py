@@ -154,7 +154,7 @@ def main():
         sys.exit("page.py needs Chromium (Debian: apt-get install chromium)")
     url = pathlib.Path(o.file).resolve().as_uri()
     wrong = []
-    with tempfile.TemporaryDirectory() as home:
+    with tempfile.TemporaryDirectory(ignore_cleanup_errors=True) as home:
         b = Browser(binary, home)
         try:
             target = b.call("Target.createTarget", url="about:blank")["targetId"]

@@ -261,13 +261,19 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 	if b.structure == nil {
 		return nil, nil
 	}
+	return b.perfectLoop(b.step(), 1)
+}
+
+// perfectLoop builds a loop of perfect channels, without gauges, of so many
+// physical seconds a tick at a slowdown.
+func (b *builder) perfectLoop(tick, slowdown float64) (*rtloop.Loop, error) {
 	var channels []rtloop.Channel
 	for i := range b.s.Channels {
 		specimen, err := b.specimen(i)
 		if err != nil {
 			return nil, err
 		}
-		c, err := perfect(b.step(), b.tick())
+		c, err := perfect(tick, b.tick())
 		if err != nil {
 			return nil, err
 		}
@@ -275,7 +281,7 @@ func (b *builder) reference() (*rtloop.Loop, error) {
 		channels = append(channels, c)
 	}
 	cfg := b.config(channels)
-	cfg.Tick, cfg.Slowdown, cfg.Judge, cfg.Memory = b.step(), 1, false, 0
+	cfg.Tick, cfg.Slowdown, cfg.Judge, cfg.Memory = tick, slowdown, false, 0
 	return b.loop(cfg)
 }
 

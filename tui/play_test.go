@@ -158,3 +158,42 @@ func TestPlayOnATerminal(t *testing.T) {
 		t.Errorf("the terminal was given back %d times", sim.ended)
 	}
 }
+
+// Every key that the help names is a key.
+func TestHelpNamesRealKeys(t *testing.T) {
+	const none = "no key"
+	single := func(keys []keyHelp, press func(r rune) (message string)) {
+		for _, k := range keys {
+			for _, name := range strings.Fields(k.key) {
+				r := []rune(name)
+				if len(r) != 1 || r[0] > '~' {
+					continue // named, like Enter, or an arrow
+				}
+				if m := press(r[0]); strings.HasPrefix(m, none) {
+					t.Errorf("%s, %s: %s", name, k.long, m)
+				}
+			}
+		}
+	}
+	sim := tcell.NewSimulationScreen("UTF-8")
+	if err := sim.Init(); err != nil {
+		t.Fatal(err)
+	}
+	defer sim.Fini()
+	t.Chdir(t.TempDir())
+	a := newApp(liveSession(t), sim)
+	single(keys, func(r rune) string {
+		a.session.message, a.session.prompt = "", nil
+		a.rune(r)
+		return a.session.message
+	})
+	if a.rune('%'); !strings.HasPrefix(a.session.message, none) {
+		t.Error("% is a key")
+	}
+	p := &playApp{player: played(t, recorded(t, 3)), desk: newDesk(sim)}
+	single(playKeys, func(r rune) string {
+		p.player.message = ""
+		p.rune(r)
+		return p.player.message
+	})
+}

@@ -172,7 +172,7 @@ func response(c compensator.Compensator) (out [3]taps, err error) {
 	ticks := 1
 	c.Memory(func(*float64) { ticks++ })
 	for i := range out {
-		c.Start(0, 0)
+		forget(c)
 		for k := range ticks + 1 {
 			var in compensator.Input
 			if k == 0 {
@@ -186,9 +186,13 @@ func response(c compensator.Compensator) (out [3]taps, err error) {
 			}
 		}
 	}
-	c.Start(0, 0)
+	forget(c)
 	return out, nil
 }
+
+// forget is Start of a compensator that does not learn, without its whole history,
+// most of which no command is made of.
+func forget(c compensator.Compensator) { c.Memory(func(v *float64) { *v = 0 }) }
 
 func complexes(v []float64) []complex128 {
 	out := make([]complex128, len(v))

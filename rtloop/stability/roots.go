@@ -19,13 +19,12 @@ var ErrUnsettled = errors.New("the poles of the loop cannot be told apart by its
 // any it begins at those of the structure with perfect actuators.
 func (m *Model) Poles(near ...complex128) ([]complex128, error) {
 	e := newEvaluator(m)
-	var found []complex128
-	if len(near) == 0 {
-		near = m.starts
-	}
+	found := e.fromStarts()
 	for _, z := range near {
-		if r, ok := e.descend(z, found); ok {
-			found = append(found, r)
+		if !closeTo(z, found) {
+			if r, ok := e.descend(z, found); ok {
+				found = append(found, r)
+			}
 		}
 	}
 	for range 24 {
@@ -109,12 +108,7 @@ func (m *Model) Pole(guess complex128) (complex128, bool) { return newEvaluator(
 // pair counted. It need not find them.
 func (m *Model) Unstable(radius float64) (int, error) {
 	e := newEvaluator(m)
-	var found []complex128
-	for _, z := range m.starts {
-		if r, ok := e.descend(z, found); ok {
-			found = append(found, r)
-		}
-	}
+	found := e.fromStarts()
 	c := circle{e: e, radius: radius, known: found}
 	n, ok := c.zeros(e.nodes())
 	if !ok {
@@ -126,6 +120,26 @@ func (m *Model) Unstable(radius float64) (int, error) {
 		}
 	}
 	return n, nil
+}
+
+// fromStarts are the poles that those of the structure with perfect actuators become.
+func (e *evaluator) fromStarts() (found []complex128) {
+	for _, z := range e.m.starts {
+		if r, ok := e.descend(z, found); ok {
+			found = append(found, r)
+		}
+	}
+	return found
+}
+
+// closeTo reports whether a guess is as good as found already.
+func closeTo(z complex128, found []complex128) bool {
+	for _, r := range found {
+		if cmplx.Abs(z-r) < 0.3*math.Abs(imag(r))+1e-6 {
+			return true
+		}
+	}
+	return false
 }
 
 func weight(r complex128) int {

@@ -168,7 +168,5 @@ func (s scaled) over(o scaled) complex128 {
 	return complex(math.Ldexp(real(q), e), math.Ldexp(imag(q), e))
 }
 
-func (s scaled) phase() float64 { return cmplx.Phase(s.m) }
-
 // log is the natural logarithm of the size.
 func (s scaled) log() float64 { return math.Log(cmplx.Abs(s.m)) + float64(s.e)*math.Ln2 }

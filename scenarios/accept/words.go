@@ -1,6 +1,10 @@
 package accept
 
-import "antelag/scenarios/quantity"
+import (
+	"antelag/rtloop"
+	"antelag/scenarios/kind"
+	"antelag/scenarios/quantity"
+)
 
 // Label says in words what the limit judges, "tracking error, rms".
 func (j *Judgement) Label() string { return labels[j.Limit] }
@@ -43,3 +47,6 @@ func Word(pass, colour bool) string {
 	}
 	return "\x1b[" + code + "m" + word + "\x1b[0m"
 }
+
+// Judge holds the figures of a lane that ran elsewhere against limits.
+func Judge(res rtloop.LaneResult, limits kind.Values) Lane { return judge(res, limits) }

@@ -12,8 +12,12 @@ import (
 // assumptions says what the verdict rests on and what it does not cover, in so
 // far as the scenario tells.
 func (r *run) assumptions() Part {
-	p := Part{Heading: "Assumed, and not tested", Text: []string{"The verdict holds for the models and settings on this page. It rests on:"}}
-	add := func(format string, args ...any) { p.List = append(p.List, fmt.Sprintf(format, args...)) }
+	return Part{Heading: "Assumed, and not tested", List: r.assumed(),
+		Text: []string{"The verdict holds for the models and settings on this page. It rests on:"}}
+}
+
+func (r *run) assumed() (list []string) {
+	add := func(format string, args ...any) { list = append(list, fmt.Sprintf(format, args...)) }
 	for i := range r.s.Channels {
 		r.assumedOf(&r.s.Channels[i], add)
 	}
@@ -22,8 +26,8 @@ func (r *run) assumptions() Part {
 		add("The specimens' force comes back only through the channels named here; actuators do not move each other or their reaction frame.")
 	}
 	add("Every tick is met: computing, converters and the network take no time beyond the actuator's delay, and no sample is late or lost.")
-	if r.v.Slowdown != 1 {
-		add("The test is slowed down %g times: what depends on speed in the specimen (viscous, friction, strain rate, inertia) is not what it would be at real speed.", r.v.Slowdown)
+	if slow := r.s.Loop.Num("slowdown"); slow != 1 {
+		add("The test is slowed down %g times: what depends on speed in the specimen (viscous, friction, strain rate, inertia) is not what it would be at real speed.", slow)
 	}
 	switch {
 	case len(r.s.Spread) > 0 && r.spread == nil:
@@ -42,7 +46,7 @@ func (r *run) assumptions() Part {
 	if len(missing) > 0 {
 		add("No acceptance limit was given for: %s.", strings.Join(missing, "; "))
 	}
-	return p
+	return list
 }
 
 func (r *run) seeded() string {

@@ -47,14 +47,14 @@ func Record(ctx context.Context, path string, o runlog.Options, progress func(do
 		return nil, err
 	}
 	t := &Test{
-		Name: path, Title: filepath.Base(path), Word: "RECORD", Pass: !rep.Interrupted,
+		Name: path, Title: filepath.Base(path), Word: recordWord, Pass: !rep.Interrupted,
 		Question: "How closely did the actuators follow their targets in this record?", Verdict: r.verdict(),
 	}
 	if rep.Title != "" {
 		t.Title += ": " + rep.Title
 	}
 	worst := r.worst()
-	t.overview = []string{"RECORD", "–", accept.Late(worst.Delay), accept.Share(worst.NRMSE), accept.Margin(rep.Energy.MarginMin), "–"}
+	t.overview = []string{recordWord, "–", accept.Late(worst.Delay), accept.Share(worst.NRMSE), accept.Margin(rep.Energy.MarginMin), "–"}
 	for _, p := range []Part{r.figures(), r.motions(), r.energy(), r.overTime(), r.assumptions(), source} {
 		if !p.empty() {
 			t.Parts = append(t.Parts, p)
@@ -211,7 +211,7 @@ func (r *record) overTime() Part {
 	f := r.rep.Figure()
 	f.Title = "Gauges over time"
 	return Part{Heading: "Gauges over time", Pictures: []Picture{{Name: "windows", Figure: f,
-		Caption: fmt.Sprintf("Each point is a window of %s.", quantity.Short(r.rep.Window, quantity.Time))}}}
+		Caption: fmt.Sprintf("Each point is a window of %s.", quantity.Format(r.rep.Window, quantity.Time))}}}
 }
 
 func (r *record) assumptions() Part {

@@ -20,6 +20,9 @@ var pageTemplate = template.Must(template.New("page").Funcs(template.FuncMap{
 	"class":   class,
 }).Parse(pageText))
 
+// recordWord stands where a test has its verdict.
+const recordWord = "RECORD"
+
 // view is what the template sees.
 type view struct {
 	*Page
@@ -82,7 +85,7 @@ func (v view) Summary() string {
 		count[t.Word]++
 	}
 	var parts []string
-	for _, word := range []string{"PASS", "FAIL", "DONE", "RECORD"} {
+	for _, word := range []string{"PASS", "FAIL", "DONE", recordWord} {
 		if n := count[word]; n > 0 {
 			parts = append(parts, fmt.Sprintf("%d %s", n, summed[word]))
 		}
@@ -90,7 +93,24 @@ func (v view) Summary() string {
 	return fmt.Sprintf("Of %d tests: %s.", len(v.Tests), listed(parts))
 }
 
-var summed = map[string]string{"PASS": "passed", "FAIL": "failed", "DONE": "ran without limits to be judged by", "RECORD": "of records, which are not judged"}
+var summed = map[string]string{"PASS": "passed", "FAIL": "failed", "DONE": "ran without limits to be judged by", recordWord: "of records, which are not judged"}
+
+// Kind says what the page is of.
+func (v view) Kind() string {
+	records := 0
+	for _, t := range v.Tests {
+		if t.Word == recordWord {
+			records++
+		}
+	}
+	switch records {
+	case 0:
+		return "Report on a real-time hybrid test, simulated"
+	case len(v.Tests):
+		return "Report on the record of a real-time hybrid test"
+	}
+	return "Report on real-time hybrid tests, simulated and recorded"
+}
 
 // Worst is the verdict on all tests together.
 func (v view) Worst() string {
@@ -114,7 +134,7 @@ func (p Picture) SVG() template.HTML { return p.svg }
 
 // isVerdict reports whether a cell is a verdict.
 func isVerdict(cell string) bool {
-	return cell == "PASS" || cell == "FAIL" || cell == "DONE" || cell == "RECORD"
+	return cell == "PASS" || cell == "FAIL" || cell == "DONE" || cell == recordWord
 }
 
 // class is how a verdict is dressed.

@@ -132,7 +132,7 @@ func (r *run) chart(ctx context.Context, m *margin.Report, p *Part) error {
 		p.Text = append(p.Text, fmt.Sprintf("No map was drawn: %v.", err))
 		return nil
 	}
-	caption := "Damping ratio of the least damped mode over two settings. Beyond the line of 0 % the loop grows; the ring is where the scenario stands."
+	caption := "Damping ratio of the least damped mode over two settings. Hatched, beyond the bold line of 0 %, the loop grows by itself; the ring is where the scenario stands."
 	if m.AfterRun {
 		caption += " Adaptive compensators count with what they start from."
 	}
@@ -149,7 +149,7 @@ func (r *run) mapOver(j int, m *margin.Report) string {
 	}
 	most := 2 * delay.Num
 	if critical := m.Channels[j].CriticalDelay; critical.Defined() {
-		most = math.Max(most, 1.5*float64(critical))
+		most = math.Max(most, 1.2*float64(critical))
 	}
 	most = math.Min(math.Max(most, 0.02), 0.25)
 	over := func(path string, from, to float64) string {

@@ -36,7 +36,13 @@ func TestEmbeddedScenariosAreAsRecorded(t *testing.T) {
 // embedded are the embedded scenarios with their recorded baselines.
 func embedded(t *testing.T) []*Test {
 	t.Helper()
-	found, err := Find(scenarios.Names(), Options{})
+	var names []string
+	for i, name := range scenarios.Names() {
+		if i%every == 0 {
+			names = append(names, name)
+		}
+	}
+	found, err := Find(names, Options{})
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -6,6 +6,7 @@ import (
 	"strings"
 	"unicode/utf8"
 
+	"antelag/scenarios/accept"
 	"antelag/scenarios/quantity"
 )
 
@@ -35,9 +36,9 @@ func (p *Report) WriteText(w io.Writer, colour bool) error {
 	for i := range p.Results {
 		r := &p.Results[i]
 		marks[i] = pad(r.status(), colour)
-		rows[i] = []string{printable(r.Name), r.accepted(), r.kept()}
+		rows[i] = []string{accept.Printable(r.Name), r.accepted(), r.kept()}
 		if r.Verdict == nil {
-			rows[i] = []string{printable(r.Name), printable(r.Err.Error())}
+			rows[i] = []string{accept.Printable(r.Name), accept.Printable(r.Err.Error())}
 		}
 	}
 	table(&out, "", marks, rows)
@@ -97,13 +98,13 @@ func (r *Result) details(out *strings.Builder, colour bool) {
 	if r.Pass() && len(failed) == 0 && !changed {
 		return
 	}
-	fmt.Fprintf(out, "\n%s: %s\n", printable(r.Name), printable(r.Scene.Title))
+	fmt.Fprintf(out, "\n%s: %s\n", accept.Printable(r.Name), accept.Printable(r.Scene.Title))
 	lane := &r.Verdict.Lanes[0]
 	if lane.Trip != nil {
-		fmt.Fprintf(out, "  %s\n", printable(lane.Ending(r.Verdict.Time)))
+		fmt.Fprintf(out, "  %s\n", accept.Printable(lane.Ending(r.Verdict.Time)))
 	}
 	if r.Err != nil {
-		fmt.Fprintf(out, "  %s\n", printable(r.Err.Error()))
+		fmt.Fprintf(out, "  %s\n", accept.Printable(r.Err.Error()))
 	}
 	if r.Comparison != nil {
 		r.changes(out)
@@ -118,7 +119,7 @@ func (r *Result) changes(out *strings.Builder) {
 		fmt.Fprintf(out, "  settings that are not those of the baseline:\n")
 		var rows [][]string
 		for _, s := range c.Settings {
-			rows = append(rows, []string{printable(s.Path), printable(orNone(s.Was)) + " → " + printable(orNone(s.Is))})
+			rows = append(rows, []string{accept.Printable(s.Path), accept.Printable(orNone(s.Was)) + " → " + accept.Printable(orNone(s.Is))})
 		}
 		table(out, "    ", nil, rows)
 		if c.Same() {
@@ -131,10 +132,10 @@ func (r *Result) changes(out *strings.Builder) {
 		if n > len(shown) {
 			text += ", …"
 		}
-		fmt.Fprintf(out, "  %s not in the baseline: %s\n", figures(n), printable(text))
+		fmt.Fprintf(out, "  %s not in the baseline: %s\n", figures(n), accept.Printable(text))
 	}
 	if len(c.Moved) > 0 {
-		fmt.Fprintf(out, "  the baseline is of version %s\n", printable(r.Baseline.Version))
+		fmt.Fprintf(out, "  the baseline is of version %s\n", accept.Printable(r.Baseline.Version))
 	}
 }
 
@@ -201,9 +202,9 @@ func (p *Report) sum(out *strings.Builder) {
 		fmt.Fprintf(out, "where a change is meant, --record keeps the new figures\n")
 	}
 	for _, g := range p.Gone {
-		fmt.Fprintf(out, "%s: the scenario of this baseline is gone\n", printable(g))
+		fmt.Fprintf(out, "%s: the scenario of this baseline is gone\n", accept.Printable(g))
 	}
 	if len(p.LeftOut) > 0 {
-		fmt.Fprintf(out, "left out, for they are no scenarios: %s\n", printable(strings.Join(p.LeftOut, ", ")))
+		fmt.Fprintf(out, "left out, for they are no scenarios: %s\n", accept.Printable(strings.Join(p.LeftOut, ", ")))
 	}
 }

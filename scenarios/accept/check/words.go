@@ -2,8 +2,6 @@ package check
 
 import (
 	"fmt"
-	"strings"
-	"unicode"
 
 	"antelag/scenarios/accept"
 	"antelag/scenarios/accept/baseline"
@@ -58,7 +56,7 @@ func (r *Result) place(m *baseline.Move) string {
 	if len(r.Scene.Lanes) > 0 {
 		what = m.Lane + ": " + what
 	}
-	return printable(what)
+	return accept.Printable(what)
 }
 
 // status is the verdict in a word. Without limit and baseline nothing is
@@ -132,16 +130,6 @@ func count(n int, what string) string {
 		return "1 " + what
 	}
 	return fmt.Sprintf("%d %ss", n, what)
-}
-
-// printable keeps what a file gave for a name from moving the cursor.
-func printable(s string) string {
-	return strings.Map(func(r rune) rune {
-		if unicode.IsPrint(r) {
-			return r
-		}
-		return ' '
-	}, s)
 }
 
 // word colours a status like that of a run.

@@ -30,7 +30,7 @@ func newCells(m *Map, logX, logY bool) *cells {
 
 // borders lie half way between the points, on the scale that is drawn.
 func borders(at []float64, log bool) []float64 {
-	log = log && at[0] > 0
+	log = log && at[0] >= smallest
 	on, back := func(v float64) float64 { return v }, func(v float64) float64 { return v }
 	if log {
 		on, back = math.Log, math.Exp

@@ -62,4 +62,14 @@ func (m *Map) check() error {
 	return nil
 }
 
-func finite(v float64) bool { return !math.IsNaN(v) && !math.IsInf(v, 0) }
+// What can be placed: numbers so far from the largest and the smallest there are
+// that sums, differences and ratios are numbers too.
+const (
+	largest  = 1e100
+	smallest = 1e-100 // on a logarithmic axis
+)
+
+func finite(v float64) bool { return math.Abs(v) <= largest }
+
+// placeable reports whether an axis can show a value.
+func placeable(v float64, log bool) bool { return finite(v) && !(log && v < smallest) }

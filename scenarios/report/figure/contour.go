@@ -1,6 +1,7 @@
 package figure
 
 import (
+	"cmp"
 	"math"
 	"slices"
 
@@ -13,37 +14,82 @@ import (
 // library's own come in an order that changes from run to run, are not
 // labelled and do not know blanks.
 func (c *cells) contours(canvas draw.Canvas, tx, ty func(float64) vg.Length, taken *notes) {
-	style := draw.LineStyle{Color: ink, Width: lineBold}
 	levels := slices.Clone(c.Contours)
+	if c.Below != "" {
+		levels = append(levels, c.Edge)
+	}
 	slices.Sort(levels)
+	var all []isoline
 	for _, level := range slices.Compact(levels) {
 		if !finite(level) {
 			continue
 		}
-		var longest []vg.Point
+		line := isoline{level: level}
 		for _, path := range c.lines(level) {
 			points := make([]vg.Point, len(path))
 			for i, p := range path {
 				points[i] = vg.Point{X: tx(p[0]), Y: ty(p[1])}
 			}
-			for _, piece := range canvas.ClipLinesXY(points) {
-				canvas.StrokeLines(style, piece)
-				if length(piece) > length(longest) {
-					longest = piece
+			line.pieces = append(line.pieces, canvas.ClipLinesXY(points)...)
+		}
+		style := draw.LineStyle{Color: ink, Width: 0.8}
+		if c.Below != "" && level == c.Edge {
+			style.Width = 2
+		}
+		canvas.StrokeLines(style, line.pieces...)
+		all = append(all, line)
+	}
+	for i := range all {
+		if places := all[i].places(all); len(places) > 0 {
+			taken.place(canvas, contWords, number(all[i].level), false, places)
+		}
+	}
+}
+
+// isoline is a drawn contour.
+type isoline struct {
+	level  float64
+	pieces [][]vg.Point
+}
+
+// places are where the value may stand, lower left corners, on the longest piece:
+// the furthest from the other contours first.
+func (l *isoline) places(all []isoline) []vg.Point {
+	var longest []vg.Point
+	for _, piece := range l.pieces {
+		if length(piece) > length(longest) {
+			longest = piece
+		}
+	}
+	if len(longest) == 0 {
+		return nil
+	}
+	type place struct {
+		at   vg.Point
+		room vg.Length
+	}
+	var places []place
+	for share := 1; share < 20; share++ {
+		p := place{at: along(longest, vg.Length(share)/20), room: vg.Length(math.Inf(1))}
+		for _, other := range all {
+			if other.level == l.level {
+				continue
+			}
+			for _, piece := range other.pieces {
+				for _, q := range piece {
+					p.room = min(p.room, length([]vg.Point{p.at, q}))
 				}
 			}
 		}
-		if len(longest) > 0 {
-			text := number(level)
-			wide := contWords.Width(text)
-			var places []vg.Point
-			for _, share := range []vg.Length{0.5, 0.4, 0.6, 0.3, 0.7, 0.2, 0.8, 0.1, 0.9} {
-				p := along(longest, share)
-				places = append(places, vg.Point{X: p.X - wide/2, Y: p.Y - contWords.Font.Size/3})
-			}
-			taken.place(canvas, contWords, text, false, places)
-		}
+		places = append(places, p)
 	}
+	slices.SortStableFunc(places, func(a, b place) int { return cmp.Compare(b.room, a.room) })
+	wide := contWords.Width(number(l.level))
+	out := make([]vg.Point, len(places))
+	for i, p := range places {
+		out[i] = vg.Point{X: p.at.X - wide/2, Y: p.at.Y - contWords.Font.Size/3}
+	}
+	return out
 }
 
 func length(path []vg.Point) vg.Length {

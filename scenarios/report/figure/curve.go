@@ -18,7 +18,7 @@ type curve struct {
 
 // shown reports whether the values can be placed.
 func (c *curve) shown(x, y float64) bool {
-	return finite(x) && finite(y) && !(c.logX && x <= 0) && !(c.logY && y <= 0)
+	return placeable(x, c.logX) && placeable(y, c.logY)
 }
 
 // history reports whether the curve runs along an X that never goes back.

@@ -70,6 +70,9 @@ func (p Panel) describe() string {
 		}
 		if low, high := ends(all); low <= high {
 			fmt.Fprintf(&b, " Values from %s.", fromTo(low, high, p.Map.Unit))
+			if p.Map.Below != "" {
+				fmt.Fprintf(&b, " Below %s: %s, in %s of the cells.", valued(p.Map.Edge, p.Map.Unit), p.Map.Below, share100(all, p.Map.Edge))
+			}
 		}
 	}
 	for _, l := range p.Levels {
@@ -89,6 +92,20 @@ func (p Panel) describe() string {
 		fmt.Fprintf(&b, " %s at %s, %s.", m.Name, valued(round(m.X, 4), p.X.Unit), valued(round(m.Y, 4), p.Y.Unit))
 	}
 	return b.String()
+}
+
+// share100 is how many of the defined values are below an edge, in percent.
+func share100(values []float64, edge float64) string {
+	below, defined := 0, 0
+	for _, v := range values {
+		if !math.IsNaN(v) {
+			defined++
+		}
+		if v < edge {
+			below++
+		}
+	}
+	return fmt.Sprintf("%.0f %%", 100*float64(below)/float64(max(1, defined)))
 }
 
 func ends(values []float64) (low, high float64) {

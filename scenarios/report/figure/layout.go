@@ -149,7 +149,8 @@ type header struct {
 // entry is one item of a legend.
 type entry struct {
 	name  string
-	curve *curve // nil: the blank of a map
+	curve *curve // nil: of a map
+	hatch bool
 	wide  vg.Length
 }
 
@@ -166,13 +167,16 @@ func newHeader(d *drawing, wide vg.Length) header {
 			entries = append(entries, entry{name: name, curve: c})
 		}
 	}
+	if d.cells != nil && clean(d.cells.Below) != "" {
+		entries = append(entries, entry{name: clean(d.cells.Below), hatch: true})
+	}
 	if d.cells != nil && d.cells.undefined() {
 		entries = append(entries, entry{name: "blank: undefined"})
 	}
 	used := vg.Length(0)
 	for _, e := range entries {
 		e.wide = legendWords.Width(e.name) + 14
-		if e.curve != nil {
+		if e.curve != nil || e.hatch {
 			e.wide += sampleWide + 4
 		}
 		if len(h.rows) == 0 || used+e.wide > wide-50 {
@@ -200,7 +204,7 @@ func (h header) draw(data draw.Canvas) {
 		x := data.Min.X
 		for _, e := range row {
 			words := x
-			if e.curve != nil {
+			if e.curve != nil || e.hatch {
 				e.sample(data, vg.Point{X: x, Y: y + 5})
 				words += sampleWide + 4
 			}
@@ -212,6 +216,13 @@ func (h header) draw(data draw.Canvas) {
 
 // sample draws a piece of the line as it looks in the diagram.
 func (e entry) sample(c draw.Canvas, at vg.Point) {
+	if e.hatch {
+		for x := vg.Length(0); x+6 <= sampleWide; x += 6 {
+			c.StrokeLine2(hatchStroke, at.X+x, at.Y-3, at.X+x+6, at.Y+3)
+		}
+		c.StrokeLine2(draw.LineStyle{Color: ink, Width: 2}, at.X, at.Y-3, at.X+sampleWide, at.Y-3)
+		return
+	}
 	l := e.curve.line
 	if len(l.Low) > 0 {
 		shade := e.curve.pen.colour

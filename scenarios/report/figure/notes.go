@@ -82,7 +82,7 @@ func (d *drawing) limit(c draw.Canvas, l Level, tx, ty func(float64) vg.Length, 
 // name writes what a limit is called; of one beyond the axis, at that edge.
 func (d *drawing) name(c draw.Canvas, l Level, tx, ty func(float64) vg.Length, taken *notes) {
 	s, name := d.scaleOf(l), clean(l.Name)
-	if name == "" || !finite(l.Value) || s.log && l.Value <= 0 {
+	if name == "" || !placeable(l.Value, s.log) {
 		return
 	}
 	wide := l.words().Width(name)
@@ -116,7 +116,7 @@ func (d *drawing) beyond(c draw.Canvas, l Level, name string, above bool, taken 
 // mark draws a ring with a point in it, white around so that it stands out from
 // anything, and its name beside it.
 func (d *drawing) mark(c draw.Canvas, m Mark, tx, ty func(float64) vg.Length, taken *notes) {
-	if !finite(m.X) || !finite(m.Y) || d.x.log && m.X <= 0 || d.y.log && m.Y <= 0 {
+	if !placeable(m.X, d.x.log) || !placeable(m.Y, d.y.log) {
 		return
 	}
 	at := vg.Point{X: tx(m.X), Y: ty(m.Y)}

@@ -105,7 +105,7 @@ type extent struct {
 
 func newExtent(log bool) extent { return extent{log, math.Inf(1), math.Inf(-1)} }
 
-func (e *extent) can(v float64) bool { return finite(v) && !(e.log && v <= 0) }
+func (e *extent) can(v float64) bool { return placeable(v, e.log) }
 
 func (e *extent) take(values ...float64) {
 	for _, v := range values {
@@ -185,7 +185,7 @@ type logarithmic struct{}
 
 // Normalize implements plot.Normalizer.
 func (logarithmic) Normalize(low, high, v float64) float64 {
-	if v <= 0 {
+	if v < smallest {
 		return -10
 	}
 	return math.Log(v/low) / math.Log(high/low)
@@ -214,6 +214,7 @@ func (d *drawing) draw() {
 	data := d.plot.DataCanvas(d.box)
 	tx, ty := d.plot.Transforms(&data)
 	if d.cells != nil {
+		d.cells.hatch(data, tx, ty)
 		frame(data)
 		d.cells.bar(data)
 	}

@@ -52,7 +52,7 @@ func samples() map[string]Figure {
 		{X: Axis{Label: "frequency", Unit: "Hz", Log: true}, Y: Axis{Label: "delay", Unit: "ms", Low: 0, High: math.NaN()},
 			Lines: []Line{{Name: "actuator", X: hz, Y: late, Points: true, Joined: true}}, Levels: []Level{{Name: "3 Hz", Value: 3, Vertical: true}}},
 	}}
-	m := &Map{Label: "spectral radius", Contours: []float64{1}}
+	m := &Map{Label: "spectral radius", Contours: []float64{1}, Below: "below 1", Edge: 1}
 	for i := range 81 {
 		m.X = append(m.X, float64(i)*0.5)
 		m.Y = append(m.Y, float64(i)*0.25)
@@ -99,7 +99,10 @@ func samples() map[string]Figure {
 func TestSamples(t *testing.T) {
 	for name, f := range samples() {
 		t.Run(name, func(t *testing.T) {
-			for _, draw := range []func(Figure) ([]byte, error){Figure.SVG, Figure.PNG} {
+			for i, draw := range []func(Figure) ([]byte, error){Figure.SVG, Figure.PNG} {
+				if i == 1 && name != "map" && name != "constant" {
+					break // pixels take time, and are made of the same
+				}
 				a, err := draw(f)
 				if err != nil {
 					t.Fatal(err)

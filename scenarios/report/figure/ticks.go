@@ -31,10 +31,10 @@ func (a Axis) span(low, high float64, air bool) scale {
 		s.pad(0.05)
 	}
 	if a.Low != 0 || a.High != 0 {
-		if finite(a.Low) && !(a.Log && a.Low <= 0) {
+		if placeable(a.Low, a.Log) {
 			s.low = a.Low
 		}
-		if finite(a.High) && !(a.Log && a.High <= 0) {
+		if placeable(a.High, a.Log) {
 			s.high = a.High
 		}
 	}
@@ -77,9 +77,9 @@ func (s *scale) divide(n int) {
 		return
 	}
 	step := niceStep((s.high - s.low) / float64(max(n, 2)))
-	largest := math.Max(math.Abs(s.low), math.Abs(s.high))
-	if largest >= 1e5 || largest < 1e-2 {
-		s.power = 3 * int(math.Floor(math.Log10(largest)/3))
+	most := math.Max(math.Abs(s.low), math.Abs(s.high))
+	if most >= 1e5 || most < 1e-2 {
+		s.power = 3 * int(math.Floor(math.Log10(most)/3))
 	}
 	unit := math.Pow(10, float64(s.power))
 	after := max(0, -int(math.Floor(math.Log10(step/unit)+1e-9)))
@@ -88,6 +88,9 @@ func (s *scale) divide(n int) {
 		if len(s.ticks) > 50 {
 			break
 		}
+	}
+	if len(s.ticks) < 2 && n < 64 { // one alone gives no scale
+		s.divide(2 * n)
 	}
 }
 

@@ -15,6 +15,14 @@ import (
 // nobody would go.
 const mostChanges = 6
 
+// mostCandidates bounds the work where a great many poles cross.
+const mostCandidates = 64
+
+// edge is how far above 1 the spectral radius must be for a loop to have passed a
+// crossing. It is finer than Neutral, because a step past the crossing of a slow
+// structure at a high rate may grow by no more; poles are good to 1e-14.
+const edge = 1e-11
+
 // delay is the actuator delay of channel j, s.
 func (a *analyst) delay(j int) float64 { return a.s.Channels[j].Actuator.Values.Num("delay") }
 
@@ -57,44 +65,52 @@ func (a *analyst) delays(ctx context.Context, channel int, m *Margins) error {
 		ahead, direction = beyond(candidates, 0, -1), -1
 	}
 	stable, before := a.stable, 0.0
-	for i := 0; i < len(ahead) && len(m.Delays) < mostChanges && i < 64; i++ {
+	for i := 0; i < len(ahead) && len(m.Delays) < mostChanges && i < mostCandidates; i++ {
 		if ctx.Err() != nil {
 			return ctx.Err()
 		}
-		probe := ahead[i].Value + direction*max(0.05*math.Abs(ahead[i].Value), 0.02*tick)
-		if i+1 < len(ahead) {
-			if mid := 0.5 * (ahead[i].Value + ahead[i+1].Value); (probe-mid)*direction > 0 {
-				probe = mid
-			}
-		}
+		probe := between(ahead, i, direction*max(0.05*math.Abs(ahead[i].Value), 0.02*tick))
 		probe = min(high, max(low, probe))
 		now, err := a.stableAt(channel, probe)
 		if err != nil {
 			return err
 		}
-		if now == stable {
-			before = probe
-			continue
+		if now != stable {
+			at, err := a.refine(channel, ahead[i], before, probe, stable)
+			if err != nil {
+				return err
+			}
+			if m.addDelay(at, a.base.Frequency(ahead[i]), now, direction); direction < 0 {
+				return nil
+			}
 		}
-		at, err := a.refine(channel, ahead[i], before, probe, stable)
-		if err != nil {
-			return err
-		}
-		before = probe
-		if direction < 0 {
-			// Found on the way down: beyond it, upwards, the loop grows.
-			m.DelayMargin = rtloop.Figure(at)
-			m.Delays = append(m.Delays, Change{rtloop.Figure(at), rtloop.Figure(a.base.Frequency(ahead[i])), false})
-			return nil
-		}
-		if len(m.Delays) == 0 {
-			at = max(0, at)
-			m.DelayMargin = rtloop.Figure(at)
-		}
-		m.Delays = append(m.Delays, Change{rtloop.Figure(at), rtloop.Figure(a.base.Frequency(ahead[i])), now})
-		stable = now
+		stable, before = now, probe
 	}
 	return nil
+}
+
+// addDelay takes in a change found on the way up, or down, to where it is stable.
+func (m *Margins) addDelay(at, frequency float64, stable bool, direction float64) {
+	if direction > 0 && len(m.Delays) == 0 {
+		at = max(0, at)
+	}
+	if len(m.Delays) == 0 {
+		m.DelayMargin = rtloop.Figure(at)
+	}
+	// Beyond, upwards, of what was found on the way down the loop grows.
+	m.Delays = append(m.Delays, Change{rtloop.Figure(at), rtloop.Figure(frequency), stable && direction > 0})
+}
+
+// between is a value behind a candidate by a step, but no further than half way to
+// the next.
+func between(ahead []stability.Crossing, i int, step float64) float64 {
+	probe := ahead[i].Value + step
+	if i+1 < len(ahead) {
+		if mid := 0.5 * (ahead[i].Value + ahead[i+1].Value); math.Abs(mid-ahead[i].Value) < math.Abs(step) {
+			probe = mid
+		}
+	}
+	return probe
 }
 
 // beyond are the candidates on one side of a value, going away from it, each place
@@ -145,7 +161,7 @@ func (a *analyst) stableAt(channel int, extra float64) (bool, error) {
 	if err != nil {
 		return false, err
 	}
-	n, err := m.Unstable(1 + Neutral)
+	n, err := m.Unstable(1 + edge)
 	return n == 0, err
 }
 
@@ -235,13 +251,7 @@ func (a *analyst) gains(channel int, m *Margins) error {
 	}
 	stable := a.stable
 	for i := 0; i < len(ahead) && len(m.Gains) < mostChanges; i++ {
-		probe := ahead[i].Value * math.Pow(1.05, direction)
-		if i+1 < len(ahead) {
-			if mid := 0.5 * (ahead[i].Value + ahead[i+1].Value); math.Abs(mid-ahead[i].Value) < math.Abs(probe-ahead[i].Value) {
-				probe = mid
-			}
-		}
-		n, err := a.base.Scaled(channel, probe).Unstable(1 + Neutral)
+		n, err := a.base.Scaled(channel, between(ahead, i, direction*0.05*ahead[i].Value)).Unstable(1 + edge)
 		if err != nil {
 			return err
 		}
@@ -249,20 +259,17 @@ func (a *analyst) gains(channel int, m *Margins) error {
 		if now == stable {
 			continue
 		}
-		at := rtloop.Figure(ahead[i].Value)
+		at := ahead[i].Value
 		if direction > 0 {
 			at = max(1, at)
 		}
 		if len(m.Gains) == 0 {
-			m.GainMargin = at
+			m.GainMargin = rtloop.Figure(at)
 		}
-		change := Change{at, rtloop.Figure(a.base.Frequency(ahead[i])), now}
+		m.Gains = append(m.Gains, Change{rtloop.Figure(at), rtloop.Figure(a.base.Frequency(ahead[i])), now && direction > 0})
 		if direction < 0 {
-			change.Stable = false
-			m.Gains = append(m.Gains, change)
 			return nil
 		}
-		m.Gains = append(m.Gains, change)
 		stable = now
 	}
 	return nil

@@ -51,7 +51,7 @@ func (g *Grid) Draw(w io.Writer, columns int) error {
 		area.Set(c, r, canvas.Cell{Rune: '◆', Ink: canvas.Cursor})
 	}
 	var b strings.Builder
-	fmt.Fprintf(&b, "%s up, %s to the right: damping ratio of the least damped mode\n", g.Y.Path, g.X.Path)
+	fmt.Fprintf(&b, "damping ratio of the least damped mode\nup     %s\nright  %s\n", g.Y.Path, g.X.Path)
 	b.WriteString(grid.String())
 	b.WriteByte('\n')
 	g.legend(&b)

@@ -12,6 +12,7 @@ import (
 	"antelag/rtloop"
 	"antelag/rtloop/stability"
 	"antelag/scenarios"
+	"antelag/scenarios/quantity"
 )
 
 // Options say how a scenario is judged. The zero value is good.
@@ -62,6 +63,9 @@ func Of(ctx context.Context, s *scenarios.Scenario, o Options) (*Report, error) 
 	}
 	a.base = base
 	r := &Report{Scenario: s.Name, Lane: o.lane(), AfterRun: o.AfterRun, Notes: notes(s)}
+	if learned != nil && learned.Outcome() != rtloop.Completed {
+		r.Notes = append(r.Notes, fmt.Sprintf("the run %s after %s; learned was what it learned until then", learned.Outcome(), quantity.Short(learned.Time(), quantity.Time)))
+	}
 	if err := a.modes(r, linear); err != nil {
 		return nil, err
 	}

@@ -20,10 +20,11 @@ func (g *Grid) Figure() figure.Figure {
 		Map: &figure.Map{
 			X: scaled(values(&g.X), x), Y: scaled(values(&g.Y), y),
 			Label: "damping ratio of the least damped mode", Unit: "%", Contours: dampingContours,
+			Below: "grows by itself",
 		},
 	}
 	if g.Measure == Radius {
-		p.Map.Label, p.Map.Unit, p.Map.Contours = "spectral radius less 1", "10⁻⁶", g.radiusContours()
+		p.Map.Label, p.Map.Unit, p.Map.Contours, p.Map.Below = "spectral radius less 1, in millionths", "", g.radiusContours(), ""
 	}
 	for iy := range g.Y.N {
 		row := make([]float64, g.X.N)

@@ -102,7 +102,7 @@ func both(tb testing.TB, s *scenarios.Scenario) (fast, exact float64) {
 
 // loops is how many random loops are looked at, and 5/2 cells of maps each. The full
 // evidence is -loops 200; it takes minutes.
-var loops = flag.Int("loops", 40, "how many random loops to look at, and cells of a map by 5/2")
+var loops = flag.Int("loops", 16, "how many random loops to look at, and cells of a map by 5/2")
 
 // The characteristic function and the eigenvalues of the state matrix have nothing in
 // common but the parts; they come to the same.
@@ -246,6 +246,44 @@ func TestMapIsWhatEigenvaluesSay(t *testing.T) {
 			}
 			if _, exact := both(t, cell); math.Abs(g.Radius[iy][ix]-exact) > 1e-9 {
 				t.Errorf("%s: %v in the map, %v by eigenvalues", cell.Name, g.Radius[iy][ix], exact)
+			}
+		}
+	}
+}
+
+// A cell of a map is what the report says of a scenario with those settings.
+func TestMapIsWhatTheReportSays(t *testing.T) {
+	s, err := scenarios.Load("piperack")
+	if err != nil {
+		t.Fatal(err)
+	}
+	if s, err = s.Plain(); err != nil {
+		t.Fatal(err)
+	}
+	x, y, err := ParseMap(s, "brace-low.actuator.delay=0:60 ms:13,brace-high.compensator.delay=0:60 ms:11")
+	if err != nil {
+		t.Fatal(err)
+	}
+	g, err := Map(context.Background(), s, x, y, Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for iy := 0; iy < y.N; iy += 2 {
+		for ix := 0; ix < x.N; ix += 3 {
+			cell, err := s.With(change(&x, ix), change(&y, iy))
+			if err != nil {
+				t.Fatal(err)
+			}
+			m, _, err := (&analyst{s: cell}).model(cell)
+			if err != nil {
+				t.Fatal(err)
+			}
+			poles, err := m.Poles()
+			if err != nil {
+				t.Fatal(err)
+			}
+			if d := m.LeastDamping(poles); math.Abs(g.Radius[iy][ix]-size(poles)) > 1e-11 || math.Abs(g.Damping[iy][ix]-d) > 1e-9 {
+				t.Errorf("cell %d, %d: radius %v, damping %v; alone %v, %v", ix, iy, g.Radius[iy][ix], g.Damping[iy][ix], size(poles), d)
 			}
 		}
 	}

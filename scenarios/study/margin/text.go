@@ -19,7 +19,7 @@ func (r *Report) WriteText(w io.Writer, colour bool) error {
 	fmt.Fprintf(&b, "%s: the %s lane for small motions about rest%s\n\n", r.Scenario, r.Lane, r.learned())
 	fmt.Fprintf(&b, "%s  spectral radius %.9f\n", r.verdict(colour), float64(r.SpectralRadius))
 	if r.Mode.Frequency.Defined() {
-		fmt.Fprintf(&b, "\nmodes, the least damped first\n")
+		fmt.Fprintf(&b, "\nmodes, the least damped first%s\n", r.levels())
 		r.modes(&b)
 	}
 	fmt.Fprintf(&b, "\nstability is lost with\n")
@@ -30,7 +30,7 @@ func (r *Report) WriteText(w io.Writer, colour bool) error {
 	r.further(&b)
 	for i, n := range r.Notes {
 		if i == 0 {
-			b.WriteString("\ntaken for linear\n")
+			b.WriteString("\nto be known\n")
 		}
 		fmt.Fprintf(&b, "  %s\n", n)
 	}
@@ -65,6 +65,14 @@ func percent(v rtloop.Figure) string {
 		return "–"
 	}
 	return fmt.Sprintf("%.2f %%", 100*float64(v))
+}
+
+// levels says which levels are not written out.
+func (r *Report) levels() string {
+	if n := len(r.Mode.Shape); n > mostLevels {
+		return fmt.Sprintf(" (levels %d to %d are in --json)", mostLevels+1, n)
+	}
+	return ""
 }
 
 // mostLevels is how many levels of a shape are written out.
@@ -136,6 +144,9 @@ func (r *Report) margin(w io.Writer, name string, m *Margins, critical string) {
 func (r *Report) further(b *bytes.Buffer) {
 	if !r.Stable {
 		b.WriteString("The loop grows as it is: delays below nothing and gains below 1 say how much\nquicker the actuator, or weaker the force, would have to be.\n")
+		if len(r.Notes) > 0 {
+			b.WriteString("Parts that yield may keep it from growing far.\n")
+		}
 	}
 	say := func(name string, m *Margins) {
 		if len(m.Delays) > 1 {

@@ -9,10 +9,9 @@ package replay
 
 import (
 	"context"
-	"errors"
 	"fmt"
-	"io/fs"
 	"math"
+	"strings"
 
 	"antelag/rtloop"
 	"antelag/rtloop/gauge"
@@ -105,7 +104,11 @@ func (p *Replay) prepare() error {
 // to it, or says nothing, is no matter.
 func (p *Replay) readProvenance() error {
 	p.slowdown = p.options.Slowdown
-	s, err := scenarios.Load(p.path + ".toml")
+	path := p.path + ".toml"
+	if !exists(path) {
+		path = strings.TrimSuffix(p.path, ".gz") + ".toml" // the log was compressed later
+	}
+	s, err := scenarios.Load(path)
 	switch {
 	case err == nil && p.belongs(s):
 		p.provenance = s
@@ -113,8 +116,8 @@ func (p *Replay) readProvenance() error {
 			p.slowdown = s.Loop.Num("slowdown")
 		}
 	case err == nil:
-		p.notes = append(p.notes, fmt.Sprintf("%s.toml does not fit the log, by its channels or its rate, and was not used", p.path))
-	case !errors.Is(err, fs.ErrNotExist) && exists(p.path+".toml"):
+		p.notes = append(p.notes, fmt.Sprintf("%s does not fit the log, by its channels or its rate, and was not used", path))
+	case exists(path):
 		p.notes = append(p.notes, fmt.Sprintf("%v; it was not used", err))
 	}
 	if p.slowdown == 0 {

@@ -1,6 +1,8 @@
 package replay
 
 import (
+	"bytes"
+	"compress/gzip"
 	"context"
 	"encoding/csv"
 	"fmt"
@@ -197,6 +199,37 @@ func TestProvenanceThatDoesNotFit(t *testing.T) {
 		if len(rep.Notes) != 1 || !strings.Contains(rep.Notes[0], note) || rep.Slowdown != 1 {
 			t.Errorf("notes %q, slowdown %v", rep.Notes, rep.Slowdown)
 		}
+	}
+}
+
+// A log that was compressed after the run still has its provenance.
+func TestProvenanceOfACompressedLog(t *testing.T) {
+	path := logged(t, 10, func(float64) (float64, float64) { return 1, 0.002 })
+	tracking, err := scenarios.Text("tracking")
+	if err != nil {
+		t.Fatal(err)
+	}
+	text := strings.NewReplacer(`"actuator"`, `"a"`, "2048 Hz", "1000 Hz").Replace(string(tracking))
+	if err := os.WriteFile(path+".toml", []byte(text), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	data, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	var packed bytes.Buffer
+	z := gzip.NewWriter(&packed)
+	z.Write(data) //nolint:errcheck // into memory
+	z.Close()
+	if err := os.WriteFile(path+".gz", packed.Bytes(), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	rep, err := Of(context.Background(), path+".gz", Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if !strings.HasPrefix(rep.Title, "actuator tracking") || len(rep.Notes) != 0 || rep.Samples != 10001 {
+		t.Errorf("%q, notes %q, %d samples", rep.Title, rep.Notes, rep.Samples)
 	}
 }
 
