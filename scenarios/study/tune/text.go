@@ -61,7 +61,7 @@ func (p *Problem) figureLabel() string {
 func (r *Result) cost() string {
 	text := fmt.Sprintf("%d settings tried", r.Tried)
 	if r.Runs > 0 && r.Wall > 0 {
-		text += fmt.Sprintf(", %d runs in %s, %s runs a second with %d workers", r.Runs, quantity.Format(r.Wall, quantity.Time),
+		text += fmt.Sprintf(", %d runs, computed in %s, %s runs a second with %d workers", r.Runs, quantity.Format(r.Wall, quantity.Time),
 			quantity.Format(float64(r.Runs)/r.Wall, quantity.None), r.Workers)
 	}
 	return text
