@@ -5,8 +5,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"io/fs"
-	"os"
 	"time"
 
 	"github.com/spf13/cobra"
@@ -95,12 +93,19 @@ func (o *checkOptions) find(args []string) (*check.Found, error) {
 	if err != nil {
 		return nil, err
 	}
-	if o.junit != "" && !o.force {
-		if _, err := os.Lstat(o.junit); err == nil {
-			return nil, fmt.Errorf("--junit: %s: %w; --force overwrites it", o.junit, fs.ErrExist)
+	if err := refuse([]output{{flag: "--junit", path: o.junit}}, o.force, theScenario); err != nil {
+		return nil, err
+	}
+	found, err := check.Find(args, check.Options{Only: o.only, Changes: changes, Strict: o.record})
+	if err != nil {
+		return nil, err
+	}
+	for _, t := range found.Tests {
+		if err := refuse([]output{{flag: "--junit", path: o.junit}}, o.force, "belongs to what is checked", t.Name, t.Path); err != nil {
+			return nil, err
 		}
 	}
-	return check.Find(args, check.Options{Only: o.only, Changes: changes, Strict: o.record})
+	return found, nil
 }
 
 func (o *checkOptions) writeJUnit(report *check.Report, began time.Time) error {

@@ -93,6 +93,7 @@ func TestCheckRefuses(t *testing.T) {
 		{[]string{"rig.toml", "--set", "x"}, "--set: "},
 		{[]string{"rig.toml", "--only", "[x"}, "--only: "},
 		{[]string{"rig.toml", "--only", "none"}, "--only none: matches none"},
+		{[]string{".", "--junit", "rig.toml", "--force"}, "--junit: rig.toml belongs to what is checked"},
 		{[]string{"rig.toml", "--junit", "old.xml"}, "--junit: old.xml: file already exists; --force overwrites it"},
 	} {
 		antelag(t, dir, append([]string{"check"}, c.args...)...).refused(t, c.want)

@@ -23,7 +23,7 @@ have written, and sum them up. All parts must be there, whole and of one study.`
 			return nil
 		},
 		RunE: func(cmd *cobra.Command, args []string) error {
-			if err := checkPicture(o.png, o.force); err != nil {
+			if err := refuse([]output{{flag: "--png", path: o.png, picture: true}}, o.force, "is the table itself", args[0]); err != nil {
 				return err
 			}
 			var sum *study.Summary

@@ -1,17 +1,16 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
 	"io"
-	"io/fs"
 	"os"
 
 	"github.com/spf13/cobra"
 	"golang.org/x/term"
 
-	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study/identified"
 	"antelag/tui/canvas"
 )
@@ -79,7 +78,7 @@ func (o *identifyOptions) run(cmd *cobra.Command, args []string) error {
 	if o.write != "" && unusable != nil {
 		return fmt.Errorf("--write: %w", unusable)
 	}
-	wrote := o.files(rep)
+	wrote := cmp.Or(saveFile("--write", o.write, o.force, func() []byte { return []byte(rep.Block()) }), savePicture(o.png, o.force, rep.Figure))
 	if err := o.print(cmd.OutOrStdout(), rep); err != nil {
 		return &failure{err}
 	}
@@ -102,17 +101,8 @@ func (o *identifyOptions) options(log string, slowed bool) (identified.Options, 
 	if o.hold != "" && o.hold != "ramp" && o.hold != "step" {
 		return out, fmt.Errorf("--hold %s: allowed are ramp and step", o.hold)
 	}
-	for _, file := range []struct{ flag, path string }{{"--write", o.write}, {"--png", o.png}} {
-		if file.path != "" && (sameFile(file.path, log) || sameFile(file.path, log+".toml")) {
-			return out, fmt.Errorf("%s %s belongs to the log itself; choose another name", file.flag, file.path)
-		}
-	}
-	if o.write != "" {
-		if _, err := os.Lstat(o.write); err == nil && !o.force {
-			return out, fmt.Errorf("--write: %s: %w; --force overwrites it", o.write, fs.ErrExist)
-		}
-	}
-	return out, checkPicture(o.png, o.force)
+	return out, refuse([]output{{flag: "--write", path: o.write}, {flag: "--png", path: o.png, picture: true}},
+		o.force, ofTheLog, log, log+".toml")
 }
 
 func (o *identifyOptions) identify(ctx context.Context, log string, options identified.Options) (*identified.Report, error) {
@@ -121,22 +111,6 @@ func (o *identifyOptions) identify(ctx context.Context, log string, options iden
 	defer context.AfterFunc(ctx, bar.clear)()
 	options.Progress = bar.report
 	return identified.Of(ctx, log, options)
-}
-
-// files writes what was asked for; the first error counts.
-func (o *identifyOptions) files(rep *identified.Report) error {
-	var first error
-	if o.write != "" {
-		if err := figure.WriteFile(o.write, []byte(rep.Block()), o.force); err != nil {
-			first = fmt.Errorf("--write: %w", err)
-		}
-	}
-	if o.png != "" {
-		if err := figure.Save(o.png, rep.Figure(), o.force); err != nil && first == nil {
-			first = pngError(err)
-		}
-	}
-	return first
 }
 
 func (o *identifyOptions) print(out io.Writer, rep *identified.Report) error {

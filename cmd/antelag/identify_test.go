@@ -71,7 +71,7 @@ func TestIdentifyRefuses(t *testing.T) {
 		{[]string{"t.csv", "--png", "x.gif"}, "--png: x.gif: a picture ends in .png or .svg"},
 		{[]string{"t.csv", "--hold", "jump"}, "--hold jump: allowed are ramp and step"},
 		{[]string{"t.csv", "--slowdown", "0"}, "--slowdown 0: it must be above zero"},
-		{[]string{"t.csv", "--write", "t.csv", "--force"}, "--write t.csv belongs to the log itself"},
+		{[]string{"t.csv", "--write", "t.csv", "--force"}, "--write: t.csv belongs to the log itself"},
 		{[]string{"t.csv", "--rate", "2 mm"}, "--rate: "},
 	} {
 		antelag(t, dir, append([]string{"identify"}, c.args...)...).refused(t, c.want)
@@ -81,11 +81,16 @@ func TestIdentifyRefuses(t *testing.T) {
 	}
 }
 
-// What cannot be written is said, after the figures.
+// What cannot be written is said: before the log is read where there is no place
+// for it, and after the figures where there is no room.
 func TestIdentifyCannotWrite(t *testing.T) {
 	dir := folder(t)
 	antelag(t, dir, "run", "tracking", "--set", "loop.rate=256 Hz", "--log", "x.csv")
-	o := antelag(t, dir, "identify", "x.csv", "--write", "no/where.toml")
+	antelag(t, dir, "identify", "x.csv", "--write", "no/where.toml").complained(t, exitFail, "--write: no/where.toml: there is no directory no")
+	if err := os.Symlink("/dev/full", filepath.Join(dir, "full.toml")); err != nil {
+		t.Fatal(err)
+	}
+	o := antelag(t, dir, "identify", "x.csv", "--write", "full.toml", "--force")
 	if o.code != exitFail || !strings.Contains(o.err, "--write: ") || !strings.Contains(o.out, "The actuator answers") {
 		t.Errorf("exit %d, %q", o.code, o.err)
 	}

@@ -1,29 +1,26 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
-	"io/fs"
-	"os"
 
 	"github.com/spf13/cobra"
-	"golang.org/x/term"
 
 	"antelag/scenarios"
-	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study/margin"
 )
 
 // marginOptions are the flags of margin.
 type marginOptions struct {
-	sets          []string
-	grid          string
-	measure       string
-	png, svg, csv string
-	options       margin.Options
-	force         bool
-	json          bool
+	sets     []string
+	grid     string
+	measure  string
+	png, csv string
+	options  margin.Options
+	force    bool
+	json     bool
 }
 
 func newMargin() *cobra.Command {
@@ -54,8 +51,7 @@ Exit 0 when the loop is stable, or the map is drawn; 1 when it grows.
 	f.BoolVar(&o.options.AfterRun, "after-run", false, "take adaptive compensators with what they have learned by the end of the run")
 	f.StringVar(&o.grid, "map", "", "draw a map over two settings, `X=a:b:n,Y=a:b:n`")
 	f.StringVar(&o.measure, "measure", "damping", "what pictures of the map show: damping, or radius, the spectral radius")
-	f.StringVar(&o.png, "png", "", "draw the map into this PNG `file`")
-	f.StringVar(&o.svg, "svg", "", "draw the map into this SVG `file`")
+	f.StringVar(&o.png, "png", "", "draw the map into this `file`, .png or .svg")
 	f.StringVar(&o.csv, "csv", "", "write every cell of the map to this CSV `file`")
 	f.IntVar(&o.options.Workers, "workers", 0, "how many rows of the map are worked out at once (default: as many as there are cores)")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
@@ -64,7 +60,7 @@ Exit 0 when the loop is stable, or the map is drawn; 1 when it grows.
 }
 
 func (o *marginOptions) run(cmd *cobra.Command, args []string) error {
-	if err := o.check(cmd); err != nil {
+	if err := o.check(cmd, args[0]); err != nil {
 		return err
 	}
 	changes, err := parseChanges(o.sets)
@@ -104,8 +100,8 @@ func (o *marginOptions) run(cmd *cobra.Command, args []string) error {
 }
 
 // check looks for what is wrong with the flags, before anything is worked out.
-func (o *marginOptions) check(cmd *cobra.Command) error {
-	for _, name := range []string{"png", "svg", "csv", "measure", "workers"} {
+func (o *marginOptions) check(cmd *cobra.Command, scenario string) error {
+	for _, name := range []string{"png", "csv", "measure", "workers"} {
 		if o.grid == "" && cmd.Flags().Changed(name) {
 			return fmt.Errorf("--%s is for a map; there is no --map", name)
 		}
@@ -117,34 +113,10 @@ func (o *marginOptions) check(cmd *cobra.Command) error {
 	default:
 		return fmt.Errorf("--measure %q: allowed are damping and radius", o.measure)
 	}
-	if o.options.Workers < 0 {
-		return fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.options.Workers)
+	if err := checkWorkers(o.options.Workers); err != nil {
+		return err
 	}
-	for _, f := range o.files(nil) {
-		if _, err := os.Lstat(f.path); err == nil && !o.force {
-			return fmt.Errorf("--%s: %s: %w; --force overwrites it", f.flag, f.path, fs.ErrExist)
-		}
-	}
-	return nil
-}
-
-// outputFile is a file that a flag asks for, and what goes into it.
-type outputFile struct {
-	flag, path string
-	data       func() ([]byte, error)
-}
-
-func (o *marginOptions) files(g *margin.Grid) []outputFile {
-	var files []outputFile
-	add := func(flag, path string, data func() ([]byte, error)) {
-		if path != "" {
-			files = append(files, outputFile{flag, path, data})
-		}
-	}
-	add("png", o.png, func() ([]byte, error) { return g.Figure().PNG() })
-	add("svg", o.svg, func() ([]byte, error) { return g.Figure().SVG() })
-	add("csv", o.csv, func() ([]byte, error) { return g.CSV(), nil })
-	return files
+	return refuse([]output{{flag: "--csv", path: o.csv}, {flag: "--png", path: o.png, picture: true}}, o.force, theScenario, scenario)
 }
 
 // chart draws the map.
@@ -152,11 +124,6 @@ func (o *marginOptions) chart(cmd *cobra.Command, s *scenarios.Scenario, bar *pr
 	x, y, err := margin.ParseMap(s, o.grid)
 	if err != nil {
 		return fmt.Errorf("--map: %w", err)
-	}
-	for _, f := range o.files(nil) {
-		if sameFile(f.path, s.Name) {
-			return fmt.Errorf("--%s %s is the scenario itself; choose another name", f.flag, f.path)
-		}
 	}
 	g, err := margin.Map(cmd.Context(), s, x, y, o.options)
 	bar.clear()
@@ -172,32 +139,11 @@ func (o *marginOptions) chart(cmd *cobra.Command, s *scenarios.Scenario, bar *pr
 	if err != nil {
 		return &failure{err}
 	}
-	if err := o.write(g); err != nil {
-		return err
+	if err := cmp.Or(saveFile("--csv", o.csv, o.force, g.CSV), savePicture(o.png, o.force, g.Figure)); err != nil {
+		return &failure{err}
 	}
 	if broken {
 		return errVerdict
 	}
 	return nil
-}
-
-func (o *marginOptions) write(g *margin.Grid) error {
-	for _, f := range o.files(g) {
-		data, err := f.data()
-		if err == nil {
-			err = figure.WriteFile(f.path, data, o.force)
-		}
-		if err != nil {
-			return &failure{fmt.Errorf("--%s: %w", f.flag, err)}
-		}
-	}
-	return nil
-}
-
-// columns is how wide the terminal is; 80 where there is none.
-func columns() int {
-	if wide, _, err := term.GetSize(int(os.Stdout.Fd())); err == nil {
-		return wide
-	}
-	return 80
 }

@@ -6,8 +6,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"io/fs"
-	"os"
 	"slices"
 
 	"github.com/spf13/cobra"
@@ -15,7 +13,6 @@ import (
 	"antelag/rtloop/runlog"
 	"antelag/scenarios"
 	"antelag/scenarios/quantity"
-	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study/replay"
 	"antelag/tui"
 )
@@ -85,7 +82,7 @@ func (o *replayOptions) run(cmd *cobra.Command, args []string) error {
 	if err != nil {
 		return err
 	}
-	wrote := o.write(rep)
+	wrote := cmp.Or(saveFile("--csv", o.csv, o.force, rep.CSV), savePicture(o.png, o.force, rep.Figure))
 	if err := o.print(cmd.OutOrStdout(), rep); err != nil {
 		return &failure{err}
 	}
@@ -116,12 +113,8 @@ func (o *replayOptions) options(log string, slowed bool) (replay.Options, error)
 			return out, fmt.Errorf("--window: %w", err)
 		}
 	}
-	if o.png != "" {
-		if _, err := figure.Format(o.png); err != nil {
-			return out, fmt.Errorf("--png: %w", err)
-		}
-	}
-	if err := o.outputs(log); err != nil {
+	if err := refuse([]output{{flag: "--csv", path: o.csv}, {flag: "--png", path: o.png, picture: true}},
+		o.force, ofTheLog, log, log+".toml"); err != nil {
 		return out, err
 	}
 	if o.against == "" {
@@ -186,45 +179,12 @@ func (o *replayOptions) load() (*scenarios.Scenario, error) {
 	return tests[0], nil
 }
 
-// outputs refuses files that are there, or are the log itself, before the log is
-// read.
-func (o *replayOptions) outputs(log string) error {
-	for _, out := range []struct{ flag, path string }{{"--csv", o.csv}, {"--png", o.png}} {
-		if out.path == "" {
-			continue
-		}
-		if sameFile(out.path, log) || sameFile(out.path, log+".toml") {
-			return fmt.Errorf("%s %s belongs to the log itself; choose another name", out.flag, out.path)
-		}
-		if _, err := os.Stat(out.path); err == nil && !o.force {
-			return fmt.Errorf("%s: %s: %w; --force overwrites it", out.flag, out.path, fs.ErrExist)
-		}
-	}
-	return nil
-}
-
 func (o *replayOptions) replay(ctx context.Context, log string, options replay.Options) (*replay.Report, error) {
 	bar := newProgress(log)
 	defer bar.clear()
 	defer context.AfterFunc(ctx, bar.clear)()
 	options.Progress = bar.report
 	return replay.Of(ctx, log, options)
-}
-
-// write writes what was asked for; the first error counts.
-func (o *replayOptions) write(rep *replay.Report) error {
-	var first error
-	if o.csv != "" {
-		if err := figure.WriteFile(o.csv, rep.CSV(), o.force); err != nil {
-			first = fmt.Errorf("--csv: %w", err)
-		}
-	}
-	if o.png != "" {
-		if err := figure.Save(o.png, rep.Figure(), o.force); err != nil && first == nil {
-			first = fmt.Errorf("--png: %w", err)
-		}
-	}
-	return first
 }
 
 func (o *replayOptions) print(out io.Writer, rep *replay.Report) error {

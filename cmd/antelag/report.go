@@ -166,35 +166,11 @@ func (o *reportOptions) check(cmd *cobra.Command, args []string) error {
 	if o.sweep != "" && len(args) > 1 {
 		return errors.New("--sweep takes one scenario at a time")
 	}
-	for _, name := range args {
-		if sameFile(o.out, name) {
-			return fmt.Errorf("-o %s: is what the report is about; choose another name", o.out)
-		}
-	}
-	if err := free(o.out, o.force); err != nil {
-		return fmt.Errorf("-o: %w", err)
+	if err := refuse([]output{{flag: "-o", path: o.out}}, o.force, "is what the report is about", args...); err != nil {
+		return err
 	}
 	if info, err := os.Stat(o.plots); o.plots != "" && err == nil && !info.IsDir() {
 		return fmt.Errorf("--plots: %s: %w and is no directory", o.plots, fs.ErrExist)
-	}
-	return nil
-}
-
-// free reports what stands in the way of writing a file.
-func free(path string, force bool) error {
-	info, err := os.Stat(path)
-	switch {
-	case errors.Is(err, fs.ErrNotExist):
-		if dir, err := os.Stat(filepath.Dir(path)); err != nil || !dir.IsDir() {
-			return fmt.Errorf("%s: there is no directory %s", path, filepath.Dir(path))
-		}
-		return nil
-	case err != nil:
-		return err
-	case info.IsDir():
-		return fmt.Errorf("%s: %w and is a directory; a file name is needed", path, fs.ErrExist)
-	case !force:
-		return fmt.Errorf("%s: %w; --force overwrites it", path, fs.ErrExist)
 	}
 	return nil
 }

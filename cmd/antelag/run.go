@@ -6,7 +6,6 @@ import (
 	"fmt"
 	"io"
 	"io/fs"
-	"os"
 	"strings"
 	"time"
 
@@ -172,7 +171,7 @@ func (o *runOptions) create(s *scenarios.Scenario) (*runlog.Writer, error) {
 	}
 	for _, path := range []string{o.log, o.log + ".toml"} {
 		if sameFile(path, s.Name) {
-			return nil, fmt.Errorf("--log %s: %s is the scenario itself; choose another name", o.log, path)
+			return nil, fmt.Errorf("--log %s: %s %s; choose another name", o.log, path, theScenario)
 		}
 	}
 	log, err := runlog.Create(o.log, s.ChannelNames(), s.Excitation.Drives, s.Provenance(version(), o.logLane, time.Now()), o.force)
@@ -183,15 +182,6 @@ func (o *runOptions) create(s *scenarios.Scenario) (*runlog.Writer, error) {
 		return nil, &failure{fmt.Errorf("--log: %w", err)}
 	}
 	return log, nil
-}
-
-func sameFile(a, b string) bool {
-	x, err := os.Stat(a)
-	if err != nil {
-		return false
-	}
-	y, err := os.Stat(b)
-	return err == nil && os.SameFile(x, y)
 }
 
 func (o *runOptions) print(out io.Writer, verdicts []*accept.Verdict, several bool) error {

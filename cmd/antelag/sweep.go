@@ -5,7 +5,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"io/fs"
 	"os"
 	"runtime"
 	"time"
@@ -13,7 +12,6 @@ import (
 	"github.com/spf13/cobra"
 
 	"antelag/scenarios"
-	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study"
 )
 
@@ -88,9 +86,6 @@ func (o *sweepOptions) run(cmd *cobra.Command, args []string) error {
 	first, last := shard.Part(st.Runs())
 	var table *study.Table
 	if o.csv != "" {
-		if sameFile(shard.Path(o.csv), st.Scenario.Name) {
-			return fmt.Errorf("--csv %s is the scenario itself; choose another name", o.csv)
-		}
 		if table, err = study.OpenTable(o.csv, st, shard, version(), o.force, sum.Add); err != nil {
 			return fileError("--csv", err)
 		}
@@ -123,11 +118,16 @@ func (o *sweepOptions) prepare(name string) (*study.Study, study.Shard, error) {
 	if !shard.Whole() && o.csv == "" {
 		return nil, shard, errors.New("--shard writes a part of a table; say which with --csv")
 	}
-	if err := checkPicture(o.png, o.force); err != nil {
+	table := o.csv
+	if table != "" {
+		table = shard.Path(table)
+	}
+	if err := refuse([]output{{flag: "--csv", path: table, goesOn: true}, {flag: "--png", path: o.png, picture: true}},
+		o.force, theScenario, name); err != nil {
 		return nil, shard, err
 	}
-	if o.workers < 0 {
-		return nil, shard, fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.workers)
+	if err := checkWorkers(o.workers); err != nil {
+		return nil, shard, err
 	}
 	if o.workers == 0 {
 		o.workers = runtime.GOMAXPROCS(0)
@@ -184,31 +184,10 @@ func (o *sweepOptions) print(out io.Writer, sum *study.Summary) error {
 
 // draw draws the picture, if there is to be one.
 func (o *sweepOptions) draw(sum *study.Summary) error {
-	if o.png == "" || sum.Runs == 0 {
+	if sum.Runs == 0 {
 		return nil
 	}
-	return pngError(figure.Save(o.png, sum.Picture(), o.force))
-}
-
-// checkPicture refuses the name of a picture before anything has run.
-func checkPicture(path string, force bool) error {
-	if path == "" {
-		return nil
-	}
-	if _, err := figure.Format(path); err != nil {
-		return pngError(err)
-	}
-	if _, err := os.Lstat(path); err == nil && !force {
-		return fmt.Errorf("--png: %s: %w; --force overwrites it", path, fs.ErrExist)
-	}
-	return nil
-}
-
-func pngError(err error) error {
-	if err != nil {
-		err = fmt.Errorf("--png: %w", err)
-	}
-	return err
+	return savePicture(o.png, o.force, sum.Picture)
 }
 
 // fileError sorts errors about output files: what stands in the way is for the

@@ -2,13 +2,11 @@ package main
 
 import (
 	"context"
-	"errors"
 	"fmt"
 
 	"github.com/spf13/cobra"
 
 	"antelag/scenarios"
-	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study/tempo"
 )
 
@@ -71,8 +69,8 @@ func (o *tempoOptions) run(cmd *cobra.Command, args []string) error {
 	} else {
 		err = r.WriteText(cmd.OutOrStdout(), columns(), inColour())
 	}
-	if err == nil && o.png != "" && len(r.Points) > 0 {
-		err = pngError(figure.Save(o.png, r.Picture(), o.force))
+	if err == nil && len(r.Points) > 0 {
+		err = savePicture(o.png, o.force, r.Picture)
 	}
 	switch {
 	case err != nil:
@@ -85,10 +83,10 @@ func (o *tempoOptions) run(cmd *cobra.Command, args []string) error {
 
 // prepare reads everything that can be wrong before anything runs.
 func (o *tempoOptions) prepare(name string) (*scenarios.Scenario, []float64, error) {
-	if o.options.Workers < 0 {
-		return nil, nil, fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.options.Workers)
+	if err := checkWorkers(o.options.Workers); err != nil {
+		return nil, nil, err
 	}
-	if err := checkPicture(o.png, o.force); err != nil {
+	if err := refuse([]output{{flag: "--png", path: o.png, picture: true}}, o.force, theScenario, name); err != nil {
 		return nil, nil, err
 	}
 	changes, err := parseChanges(o.sets)
@@ -98,9 +96,6 @@ func (o *tempoOptions) prepare(name string) (*scenarios.Scenario, []float64, err
 	s, err := scenarios.Load(name, changes...)
 	if err != nil {
 		return nil, nil, err
-	}
-	if o.png != "" && sameFile(o.png, s.Name) {
-		return nil, nil, errors.New("--png is the scenario itself; choose another name")
 	}
 	slowdowns, err := tempo.Slowdowns(s, o.slowdowns)
 	if err != nil {

@@ -4,9 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"io/fs"
 	"math"
-	"os"
 	"runtime"
 	"strings"
 	"time"
@@ -15,7 +13,6 @@ import (
 
 	"antelag/scenarios"
 	"antelag/scenarios/quantity"
-	"antelag/scenarios/report/figure"
 	"antelag/scenarios/study"
 	"antelag/scenarios/study/margin"
 	"antelag/scenarios/study/tune"
@@ -106,19 +103,15 @@ func (o *tuneOptions) run(cmd *cobra.Command, args []string) error {
 
 // prepare reads everything that can be wrong before anything is written.
 func (o *tuneOptions) prepare(cmd *cobra.Command, name string) (*tune.Problem, error) {
-	for _, path := range []string{o.write, o.png} {
-		if _, err := os.Lstat(path); path != "" && err == nil && !o.force {
-			return nil, fmt.Errorf("%s: %w; --force overwrites it", path, fs.ErrExist)
-		}
-	}
-	if err := checkPicture(o.png, o.force); err != nil {
+	if err := refuse([]output{{flag: "--record", path: o.record, goesOn: true}, {flag: "--write", path: o.write}, {flag: "--png", path: o.png, picture: true}},
+		o.force, theScenario, name); err != nil {
 		return nil, err
 	}
 	if err := o.readLimits(); err != nil {
 		return nil, err
 	}
-	if o.options.Workers < 0 {
-		return nil, fmt.Errorf("--workers %d: allowed is a whole number from 1 on", o.options.Workers)
+	if err := checkWorkers(o.options.Workers); err != nil {
+		return nil, err
 	}
 	if o.options.Workers == 0 {
 		o.options.Workers = runtime.GOMAXPROCS(0)
@@ -134,11 +127,6 @@ func (o *tuneOptions) prepare(cmd *cobra.Command, name string) (*tune.Problem, e
 	p, err := tune.New(tests[0], o.options)
 	if err != nil {
 		return nil, err
-	}
-	for _, path := range []string{o.write, o.png, o.record} {
-		if path != "" && sameFile(path, tests[0].Name) {
-			return nil, fmt.Errorf("%s is the scenario itself; choose another name", path)
-		}
 	}
 	_, err = tests[0].Build()
 	return p, err
@@ -238,12 +226,9 @@ func (o *tuneOptions) files(r *tune.Result) error {
 		if err != nil {
 			return err
 		}
-		if err := figure.WriteFile(o.write, []byte(s.Resolved()), o.force); err != nil {
-			return fmt.Errorf("--write: %w", err)
+		if err := saveFile("--write", o.write, o.force, func() []byte { return []byte(s.Resolved()) }); err != nil {
+			return err
 		}
 	}
-	if o.png != "" {
-		return pngError(figure.Save(o.png, r.Picture(), o.force))
-	}
-	return nil
+	return savePicture(o.png, o.force, r.Picture)
 }
