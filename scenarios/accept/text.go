@@ -5,7 +5,6 @@ import (
 	"io"
 	"slices"
 	"strings"
-	"text/tabwriter"
 	"unicode"
 
 	"antelag/rtloop"
@@ -130,29 +129,8 @@ func (p *page) verdict(l *Lane) string {
 	return p.word(l.Pass)
 }
 
-// table writes a blank line and then rows of cells in columns, the headings
-// first. Each row but the headings may have a mark in front, which may hold
-// colour.
-func (p *page) table(rows [][]string, marks []string) {
-	var text strings.Builder
-	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
-	for _, row := range rows {
-		fmt.Fprintln(t, strings.Join(row, "\t"))
-	}
-	t.Flush() //nolint:errcheck // a Builder does not fail
-	p.printf("\n")
-	for i, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
-		mark := ""
-		switch {
-		case len(marks) == 0:
-		case i == 0:
-			mark = strings.Repeat(" ", len("PASS  "))
-		default:
-			mark = marks[i-1] + "  "
-		}
-		p.printf("  %s%s\n", mark, strings.TrimRight(line, " "))
-	}
-}
+// table is WriteTable on the page.
+func (p *page) table(rows [][]string, marks []string) { WriteTable(&p.Builder, rows, marks) }
 
 // limits shows each acceptance limit, what was found and what room is left.
 func (p *page) limits(l *Lane) {

@@ -1,6 +1,10 @@
 package accept
 
 import (
+	"fmt"
+	"strings"
+	"text/tabwriter"
+
 	"antelag/rtloop"
 	"antelag/scenarios/kind"
 	"antelag/scenarios/quantity"
@@ -36,16 +40,51 @@ func (l *Lane) Figure(limit string) (value float64, dim quantity.Dim) {
 // Printable keeps what a file gave for a name from moving the cursor.
 func Printable(s string) string { return printable(s) }
 
+// WriteTable writes a blank line and then rows of cells in columns, the headings
+// first. Each row but the headings may have a mark of four letters in front, which
+// may hold colour.
+func WriteTable(b *strings.Builder, rows [][]string, marks []string) {
+	var text strings.Builder
+	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
+	for _, row := range rows {
+		fmt.Fprintln(t, strings.Join(row, "\t"))
+	}
+	t.Flush() //nolint:errcheck // a Builder does not fail
+	b.WriteString("\n")
+	for i, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
+		mark := ""
+		switch {
+		case len(marks) == 0:
+		case i == 0:
+			mark = strings.Repeat(" ", len("PASS  "))
+		default:
+			mark = marks[i-1] + "  "
+		}
+		fmt.Fprintf(b, "  %s\n", strings.TrimRight(mark+line, " "))
+	}
+}
+
+// The colours of words that decide.
+const (
+	Good   = "32;1" // green
+	Bad    = "31;1" // red
+	Unsure = "33;1" // yellow
+)
+
+// Coloured gives a word one of these colours, on a terminal.
+func Coloured(word, colour string) string { return "\x1b[" + colour + "m" + word + "\x1b[0m" }
+
 // Word is a verdict in one word of four letters.
 func Word(pass, colour bool) string {
-	word, code := "FAIL", "31;1"
-	if pass {
-		word, code = "PASS", "32;1"
+	switch {
+	case pass && colour:
+		return Coloured("PASS", Good)
+	case pass:
+		return "PASS"
+	case colour:
+		return Coloured("FAIL", Bad)
 	}
-	if !colour {
-		return word
-	}
-	return "\x1b[" + code + "m" + word + "\x1b[0m"
+	return "FAIL"
 }
 
 // Judge holds the figures of a lane that ran elsewhere against limits.

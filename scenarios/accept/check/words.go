@@ -142,5 +142,5 @@ func word(status string, colour bool) string {
 	case status == "FAIL":
 		return accept.Word(false, true)
 	}
-	return "\x1b[31;1m" + status + "\x1b[0m"
+	return accept.Coloured(status, accept.Bad)
 }

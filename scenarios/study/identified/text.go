@@ -6,7 +6,6 @@ import (
 	"math"
 	"strconv"
 	"strings"
-	"text/tabwriter"
 
 	"antelag/plant/identify"
 	"antelag/scenarios/accept"
@@ -87,18 +86,7 @@ func (r *Report) head(b *strings.Builder) {
 	}
 }
 
-func table(b *strings.Builder, rows [][]string) {
-	var text strings.Builder
-	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
-	for _, row := range rows {
-		fmt.Fprintln(t, strings.Join(row, "\t"))
-	}
-	t.Flush() //nolint:errcheck // a Builder does not fail
-	b.WriteByte('\n')
-	for _, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
-		b.WriteString("  " + strings.TrimRight(line, " ") + "\n")
-	}
-}
+func table(b *strings.Builder, rows [][]string) { accept.WriteTable(b, rows, nil) }
 
 func (r *Report) fits(b *strings.Builder) {
 	l, s := r.LagDelay, r.Second

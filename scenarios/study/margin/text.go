@@ -1,7 +1,6 @@
 package margin
 
 import (
-	"bytes"
 	"fmt"
 	"io"
 	"math"
@@ -9,17 +8,18 @@ import (
 	"text/tabwriter"
 
 	"antelag/rtloop"
+	"antelag/scenarios/accept"
 	"antelag/scenarios/quantity"
 )
 
 // WriteText writes the report for people. With colour, the word that decides is
 // coloured too.
 func (r *Report) WriteText(w io.Writer, colour bool) error {
-	var b bytes.Buffer
+	var b strings.Builder
 	fmt.Fprintf(&b, "%s: the %s lane for small motions about rest%s\n\n", r.Scenario, r.Lane, r.learned())
 	fmt.Fprintf(&b, "%s  spectral radius %.9f\n", r.verdict(colour), float64(r.SpectralRadius))
 	if r.Mode.Frequency.Defined() {
-		fmt.Fprintf(&b, "\nmodes, the least damped first%s\n", r.levels())
+		fmt.Fprintf(&b, "\nmodes, the least damped first%s\n\n", r.levels())
 		r.modes(&b)
 	}
 	fmt.Fprintf(&b, "\nstability is lost with\n")
@@ -34,7 +34,7 @@ func (r *Report) WriteText(w io.Writer, colour bool) error {
 		}
 		fmt.Fprintf(&b, "  %s\n", n)
 	}
-	_, err := w.Write(b.Bytes())
+	_, err := io.WriteString(w, b.String())
 	return err
 }
 
@@ -46,15 +46,15 @@ func (r *Report) learned() string {
 }
 
 func (r *Report) verdict(colour bool) string {
-	word, code := "STABLE", "\x1b[32m"
+	word, code := "STABLE", accept.Good
 	switch {
 	case !r.Stable:
-		word, code = "GROWS", "\x1b[31m"
+		word, code = "GROWS", accept.Bad
 	case math.Abs(float64(r.SpectralRadius)-1) <= Neutral:
-		word, code = "ON THE EDGE", "\x1b[33m"
+		word, code = "ON THE EDGE", accept.Unsure
 	}
 	if colour {
-		return code + word + "\x1b[0m"
+		return accept.Coloured(word, code)
 	}
 	return word
 }
@@ -78,7 +78,7 @@ func (r *Report) levels() string {
 // mostLevels is how many levels of a shape are written out.
 const mostLevels = 8
 
-func (r *Report) modes(b *bytes.Buffer) {
+func (r *Report) modes(b *strings.Builder) {
 	w := tabwriter.NewWriter(b, 0, 0, 3, ' ', tabwriter.AlignRight)
 	levels := len(r.Mode.Shape)
 	head := "  frequency\tdamping ratio\t"
@@ -107,41 +107,41 @@ func signed(m *Mode, k int) string {
 	if math.Abs(phase) > 0.1 && math.Abs(size) > 0.02 {
 		return fmt.Sprintf("%.2f∠%.0f°", size, phase*180/math.Pi)
 	}
+	if math.Abs(size) < 0.005 {
+		size = 0 // not -0.00
+	}
 	return fmt.Sprintf("%.2f", size)
 }
 
-func (r *Report) margins(b *bytes.Buffer) {
-	w := tabwriter.NewWriter(b, 0, 0, 3, ' ', 0)
-	fmt.Fprintln(w, "  channel\textra delay\tat\tdelay then\tforce gain\tat\t")
+func (r *Report) margins(b *strings.Builder) {
+	rows := [][]string{{"channel", "extra delay", "at", "delay then", "force gain", "at"}}
 	for i := range r.Channels {
 		c := &r.Channels[i]
-		r.margin(w, c.Name, &c.Margins, quantity.Format(float64(c.CriticalDelay), quantity.Time))
+		rows = append(rows, c.Margins.row(c.Name, quantity.Format(float64(c.CriticalDelay), quantity.Time)))
 	}
 	if len(r.Channels) > 1 {
-		r.margin(w, "all together", &r.Together, "–")
+		rows = append(rows, r.Together.row("all together", "–"))
 	}
-	w.Flush()
+	accept.WriteTable(b, rows, nil)
 }
 
-func (r *Report) margin(w io.Writer, name string, m *Margins, critical string) {
-	delay, gain := "none found", "none found"
-	at := [2]string{"", ""}
+func (m *Margins) row(name, critical string) []string {
+	row := []string{name, "none found", "", "", "none found", ""}
 	if m.DelayMargin.Defined() {
-		delay = quantity.Format(float64(m.DelayMargin), quantity.Time)
-		at[0] = quantity.Format(float64(m.Delays[0].Frequency), quantity.Frequency)
-	} else {
-		critical = ""
+		row[1] = quantity.Format(float64(m.DelayMargin), quantity.Time)
+		row[2] = quantity.Format(float64(m.Delays[0].Frequency), quantity.Frequency)
+		row[3] = critical
 	}
 	if m.GainMargin.Defined() {
-		gain = quantity.Format(float64(m.GainMargin), quantity.None)
-		at[1] = quantity.Format(float64(m.Gains[0].Frequency), quantity.Frequency)
+		row[4] = quantity.Format(float64(m.GainMargin), quantity.None)
+		row[5] = quantity.Format(float64(m.Gains[0].Frequency), quantity.Frequency)
 	}
-	fmt.Fprintf(w, "  %s\t%s\t%s\t%s\t%s\t%s\t\n", name, delay, at[0], critical, gain, at[1])
+	return row
 }
 
 // further says where stability comes back, and what the signs of an unstable loop's
 // margins mean.
-func (r *Report) further(b *bytes.Buffer) {
+func (r *Report) further(b *strings.Builder) {
 	if !r.Stable {
 		b.WriteString("The loop grows as it is: delays below nothing and gains below 1 say how much\nquicker the actuator, or weaker the force, would have to be.\n")
 		if len(r.Notes) > 0 {

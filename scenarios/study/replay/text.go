@@ -5,7 +5,6 @@ import (
 	"io"
 	"math"
 	"strings"
-	"text/tabwriter"
 
 	"antelag/rtloop"
 	"antelag/scenarios/accept"
@@ -49,18 +48,7 @@ func (r *Report) head(b *strings.Builder) {
 }
 
 // columns writes rows of cells in columns, the headings first, behind a blank line.
-func columns(b *strings.Builder, rows [][]string) {
-	fmt.Fprintln(b)
-	var text strings.Builder
-	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
-	for _, row := range rows {
-		fmt.Fprintln(t, strings.Join(row, "\t"))
-	}
-	t.Flush() //nolint:errcheck // a Builder does not fail
-	for _, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
-		fmt.Fprintln(b, "  "+strings.TrimRight(line, " "))
-	}
-}
+func columns(b *strings.Builder, rows [][]string) { accept.WriteTable(b, rows, nil) }
 
 func length(f rtloop.Figure) string { return quantity.Format(float64(f), quantity.Length) }
 
