@@ -4,12 +4,10 @@ import (
 	"errors"
 	"fmt"
 	"os"
-	"strings"
 
 	"github.com/spf13/cobra"
 	"golang.org/x/term"
 
-	"antelag/scenarios"
 	"antelag/tui"
 )
 
@@ -26,12 +24,7 @@ Keys: arrows choose and change settings, enter edits, space pauses, ? shows all
 keys, q quits. It needs a terminal of at least 80 columns and 24 rows.
 
 ` + cautions,
-		Args: func(_ *cobra.Command, args []string) error {
-			if len(args) != 1 {
-				return fmt.Errorf("bench takes one SCENARIO: a file, or one of %s", strings.Join(scenarios.Names(), ", "))
-			}
-			return nil
-		},
+		Args:              oneScenario("bench"),
 		ValidArgsFunction: completeScenario,
 		RunE: func(cmd *cobra.Command, args []string) error {
 			return bench(cmd, args[0], sets)

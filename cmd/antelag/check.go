@@ -34,8 +34,8 @@ that --record kept beside it in NAME.baseline.toml, each with its tolerance. PAT
 is a directory, a file or the name of an embedded scenario, whose baseline is kept
 in the working directory.
 
-Exit code 0: all good; 1: a limit failed, a figure left its tolerance, or something
-could not be written; 2: bad input. Of scenarios in a directory those that do not
+Exit code: 0 all good; 1 a limit failed, a figure left its tolerance, or something
+could not be written; 2 bad input. Of scenarios in a directory those that do not
 read are reported with the others, and nothing is recorded.
 
 ` + cautions,
@@ -52,8 +52,8 @@ read are reported with the others, and nothing is recorded.
 	f.StringArrayVar(&o.sets, "set", nil, setHelp)
 	f.StringVar(&o.only, "only", "", "check only scenarios whose name matches this `PATTERN` (* ? [ab]), or has it as a part")
 	f.BoolVar(&o.record, "record", false, "keep the figures as the baseline; of an existing one, say what changes")
-	f.StringVar(&o.junit, "junit", "", "write the results as XML for build servers to this `file`")
-	f.BoolVar(&o.force, "force", false, "let --junit overwrite an existing file")
+	f.StringVar(&o.junit, "junit", "", "write the results as XML for build servers to this `FILE`")
+	f.BoolVar(&o.force, "force", false, "overwrite existing files, by --junit")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
 }

@@ -34,6 +34,6 @@ func newDescribe() *cobra.Command {
 			return writeJSON(cmd.OutOrStdout(), map[string]any{"kinds": entries})
 		},
 	}
-	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object instead")
+	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object instead of the text")
 	return cmd
 }

@@ -15,7 +15,11 @@ func newGather() *cobra.Command {
 		Short: "put the parts of a sweep that was shared out together",
 		Long: `Put the parts that "antelag sweep --csv FILE.csv --shard i/n" wrote,
 FILE.1-of-n.csv and so on, together as FILE.csv, byte for byte what one sweep would
-have written, and sum them up. All parts must be there, whole and of one study.`,
+have written, and sum them up. All parts must be there, whole and of one study.
+
+Exit code: 0 every run passes, 1 one does not, 2 bad input.
+
+` + cautions,
 		Args: func(_ *cobra.Command, args []string) error {
 			if len(args) != 1 {
 				return errors.New("gather takes one FILE.csv: the --csv of the sweep whose parts it puts together")
@@ -44,7 +48,7 @@ have written, and sum them up. All parts must be there, whole and of one study.`
 		},
 	}
 	cmd.Flags().BoolVar(&o.force, "force", false, "overwrite existing files")
-	cmd.Flags().StringVar(&o.png, "png", "", "draw the summary into this `file`, .png or .svg")
+	cmd.Flags().StringVar(&o.png, "png", "", "draw the summary into this `FILE`, PNG or SVG by its ending")
 	cmd.Flags().BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
 }

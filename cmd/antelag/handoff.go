@@ -40,22 +40,19 @@ good command when an input is none that the channel's limits allow. Beside them
 stand test vectors computed by this program, a self-test that runs them, and a
 Makefile: make -C DIR test.
 
+Exit code: 0 good, 1 it could not write or was interrupted, 2 bad input.
+
 ` + cautions,
-		Args: func(_ *cobra.Command, args []string) error {
-			if len(args) != 1 {
-				return fmt.Errorf("handoff takes one SCENARIO: a file, or one of %s", strings.Join(scenarios.Names(), ", "))
-			}
-			return nil
-		},
+		Args:              oneScenario("handoff"),
 		ValidArgsFunction: completeScenario,
 		RunE:              o.run,
 	}
 	f := cmd.Flags()
-	f.StringVarP(&o.dir, "output", "o", "", "write into this `directory`")
-	f.StringVar(&o.lane, "lane", scenarios.Configured, "the lane whose compensators are written")
-	f.StringArrayVar(&o.channels, "channel", nil, "only this `channel`; may be repeated")
+	f.StringVarP(&o.dir, "output", "o", "", "write into this `DIR`")
+	f.StringVar(&o.lane, "lane", scenarios.Configured, "write the compensators of the lane of this `NAME`")
+	f.StringArrayVar(&o.channels, "channel", nil, "only the channel of this `NAME`; may be repeated")
 	f.StringArrayVar(&o.sets, "set", nil, setHelp)
-	f.Uint64Var(&o.seed, "seed", 1, "`number` that the input of the test vectors is drawn with")
+	f.Uint64Var(&o.seed, "seed", 1, "seed `N` that the input of the test vectors is drawn with")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd

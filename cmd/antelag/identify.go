@@ -53,10 +53,10 @@ Exit code: 0 good, 1 it could not write or was interrupted, 2 bad input.
 	}
 	o.log.flags(cmd)
 	f := cmd.Flags()
-	f.Float64Var(&o.slowdown, "slowdown", 0, "physical seconds that a second of the log took (default: as the log was written)")
-	f.StringVar(&o.hold, "hold", "", "how commands followed each other: ramp or step (default: as the log was written, or ramp)")
-	f.StringVar(&o.write, "write", "", "write the fitted block into this `file`")
-	f.StringVar(&o.png, "png", "", "draw the frequency response into this `file`, PNG or SVG by its ending")
+	f.Float64Var(&o.slowdown, "slowdown", 0, "physical `SECONDS` that a second of the log took (default: as the log was written)")
+	f.StringVar(&o.hold, "hold", "", "how commands followed each other, a `HOLD`: ramp or step (default: as the log was written, or ramp)")
+	f.StringVar(&o.write, "write", "", "write the fitted block into this `FILE`")
+	f.StringVar(&o.png, "png", "", "draw the frequency response into this `FILE`, PNG or SVG by its ending")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the text")
 	return cmd

@@ -26,9 +26,9 @@ mended is said.`
 
 func (f *logFlags) flags(cmd *cobra.Command) {
 	s := cmd.Flags()
-	s.Var(&f.columns, "map", "which column is what, by heading or number: time=1,target=x_ref,measured=3,force=4")
-	s.Var(&f.units, "units", "units of columns whose headings name none: mm,kN or target=in,force=kip")
-	s.StringVar(&f.rate, "rate", "", "the rate of rows without good time stamps, like \"1024 Hz\"")
+	s.Var(&f.columns, "map", "which column is what, `ROLE=COLUMN`, by heading or number: time=1,target=x_ref,measured=3,force=4")
+	s.Var(&f.units, "units", "the `UNITS` of columns whose headings name none: mm,kN or target=in,force=kip")
+	s.StringVar(&f.rate, "rate", "", "the `RATE` of rows without good time stamps, like \"1024 Hz\"")
 	s.StringVar(&f.channel, "channel", "", "read the channel of this `NAME` alone")
 }
 

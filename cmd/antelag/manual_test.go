@@ -91,9 +91,32 @@ func TestHelp(t *testing.T) {
 		}
 	}
 	o := antelag(t, dir, "run", "--help").good(t)
-	for _, want := range []string{caution, "--set PATH=VALUE", "--log file", "--log-lane", "--force", "--json"} {
+	for _, want := range []string{caution, "--set PATH=VALUE", "--log FILE", "--log-lane", "--force", "--json"} {
 		if !strings.Contains(o.out, want) {
 			t.Errorf("run --help does not say %q:\n%s", want, o.out)
+		}
+	}
+}
+
+// Every command whose answer may be acted on at the machine carries the caution,
+// and says what its exit codes mean; every one that takes a scenario takes --set.
+func TestHelpOfEveryCommand(t *testing.T) {
+	t.Parallel()
+	dir := t.TempDir()
+	for _, name := range []string{"bench", "run", "replay", "identify", "margin", "tempo", "tune", "sweep", "gather", "check", "handoff", "report"} {
+		text := antelag(t, dir, name, "--help").good(t).out
+		wants := []string{"Caution: hydraulic actuators crush.", "no interlock", "2 bad input", "overwrite existing files", "--json", "--set PATH=VALUE"}
+		switch name {
+		case "bench": // it runs until it is left, and writes nothing by flags
+			wants = []string{wants[0], wants[1], wants[5]}
+		case "gather", "identify": // of tables and logs
+			wants = wants[:5]
+		}
+		words := strings.Join(strings.Fields(text), " ")
+		for _, want := range wants {
+			if !strings.Contains(words, want) {
+				t.Errorf("%s --help does not say %q:\n%s", name, want, text)
+			}
 		}
 	}
 }

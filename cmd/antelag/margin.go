@@ -38,7 +38,7 @@ their initial stiffness.
 
     antelag margin archive --map "damper.actuator.delay=0:30 ms:120,damper.compensator.delay=0:30 ms:120"
 
-Exit 0 when the loop is stable, or the map is drawn; 1 when it grows.
+Exit code: 0 the loop is stable, or the map is drawn, 1 it grows, 2 bad input.
 
 ` + cautions,
 		Args:              oneScenario("margin"),
@@ -47,13 +47,13 @@ Exit 0 when the loop is stable, or the map is drawn; 1 when it grows.
 	}
 	f := cmd.Flags()
 	f.StringArrayVar(&o.sets, "set", nil, setHelp)
-	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "the lane that is judged")
+	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "judge the lane of this `NAME`")
 	f.BoolVar(&o.options.AfterRun, "after-run", false, "take adaptive compensators with what they have learned by the end of the run")
 	f.StringVar(&o.grid, "map", "", "draw a map over two settings, `X=a:b:n,Y=a:b:n`")
-	f.StringVar(&o.measure, "measure", "damping", "what pictures of the map show: damping, or radius, the spectral radius")
-	f.StringVar(&o.png, "png", "", "draw the map into this `file`, .png or .svg")
-	f.StringVar(&o.csv, "csv", "", "write every cell of the map to this CSV `file`")
-	f.IntVar(&o.options.Workers, "workers", 0, "how many rows of the map are worked out at once (default: as many as there are cores)")
+	f.StringVar(&o.measure, "measure", "damping", "show this `MEASURE` in pictures of the map: damping, or radius, the spectral radius")
+	f.StringVar(&o.png, "png", "", "draw the map into this `FILE`, PNG or SVG by its ending")
+	f.StringVar(&o.csv, "csv", "", "write every cell of the map to this CSV `FILE`")
+	f.IntVar(&o.options.Workers, "workers", 0, "work out `N` rows of the map at once (default: as many as there are cores)")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd

@@ -42,8 +42,8 @@ ticks. Exit code: 0 the rate was held, 1 it was not, 2 bad input.`,
 		RunE:              o.run,
 	}
 	f := cmd.Flags()
-	f.StringVar(&o.rate, "rate", "2048 Hz", "the `rate` to hold")
-	f.StringVar(&o.time, "time", "10 s", "how much `time` to measure")
+	f.StringVar(&o.rate, "rate", "2048 Hz", "the `RATE` to hold")
+	f.StringVar(&o.time, "time", "10 s", "how much `TIME` to measure")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
 }

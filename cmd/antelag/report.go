@@ -41,6 +41,9 @@ and the verdict first, then pictures, settings with their units, what was assume
 and where it all comes from. The page asks nothing of the network and prints on
 A4 or Letter. The same input comes to the same bytes.
 
+Exit code: 0 good; 1 a limit failed, a trip or divergence, or it could not write; 2 bad
+input.
+
 A name that ends in .csv, .tsv, .txt, .dat or .asc, also with .gz, is the LOG of a
 test that has been: then the page is of its gauges.
 
@@ -60,9 +63,9 @@ test that has been: then the page is of its gauges.
 	f := cmd.Flags()
 	f.StringVarP(&o.out, "output", "o", "", "the page to write, a `FILE.html`")
 	f.StringArrayVar(&o.sets, "set", nil, setHelp)
-	f.StringVar(&o.plots, "plots", "", "write every picture into this `directory` too, as PNG and as SVG")
-	f.StringVar(&o.date, "date", "", "the `date` to print, as it is given; without it there is none and the same input makes the same page")
-	f.StringVar(&o.sweep, "sweep", "", "show the spread of this `table`, a CSV file that sweep wrote of the scenario")
+	f.StringVar(&o.plots, "plots", "", "write every picture into this `DIR` too, as PNG and as SVG")
+	f.StringVar(&o.date, "date", "", "the `DATE` to print, as it is given; without it there is none and the same input makes the same page")
+	f.StringVar(&o.sweep, "sweep", "", "show the spread of this `TABLE`, a CSV file that sweep wrote of the scenario")
 	f.StringVar(&o.grid, "stability-map", "", "the two settings of the stability map, `X=a:b:n,Y=a:b:n` (default: the delay of the actuator and the one that the compensator assumes)")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object about what was written")

@@ -55,8 +55,8 @@ file or the name of an embedded one. The configured lane decides the exit code:
 func (o *runOptions) flags(cmd *cobra.Command) {
 	f := cmd.Flags()
 	f.StringArrayVar(&o.sets, "set", nil, setHelp)
-	f.StringVar(&o.log, "log", "", "write every tick to this CSV `file`, with its provenance beside it")
-	f.StringVar(&o.logLane, "log-lane", scenarios.Configured, "the lane that --log writes")
+	f.StringVar(&o.log, "log", "", "write every tick to this CSV `FILE`, with its provenance beside it")
+	f.StringVar(&o.logLane, "log-lane", scenarios.Configured, "write the lane of this `NAME` with --log")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 }

@@ -3,6 +3,7 @@ package main
 import (
 	"fmt"
 	"io"
+	"strings"
 	"text/tabwriter"
 
 	"github.com/spf13/cobra"
@@ -24,7 +25,7 @@ func newScenarios() *cobra.Command {
 			return listScenarios(cmd.OutOrStdout(), asJSON)
 		},
 	}
-	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object instead")
+	cmd.Flags().BoolVar(&asJSON, "json", false, "print one JSON object instead of the text")
 	return cmd
 }
 
@@ -66,4 +67,14 @@ func listScenarios(out io.Writer, asJSON bool) error {
 // completeScenario offers the embedded scenarios beside files.
 func completeScenario(*cobra.Command, []string, string) ([]string, cobra.ShellCompDirective) {
 	return scenarios.Names(), cobra.ShellCompDirectiveDefault
+}
+
+// oneScenario asks for exactly one SCENARIO.
+func oneScenario(command string) cobra.PositionalArgs {
+	return func(_ *cobra.Command, args []string) error {
+		if len(args) != 1 {
+			return fmt.Errorf("%s takes one SCENARIO: a file, or one of %s", command, strings.Join(scenarios.Names(), ", "))
+		}
+		return nil
+	}
 }

@@ -35,7 +35,7 @@ func newSweep() *cobra.Command {
 		Short: "run a scenario many times, on a grid of settings or over its [spread]",
 		Long: `Run a scenario many times with some settings changed: on a grid (--over), over
 draws from its [spread] (--draws), or both, which makes all draws at every point
-of the grid. Exit 0 when every run passes, 1 when one does not.
+of the grid. Exit code: 0 every run passes, 1 one does not, 2 bad input.
 
 With --csv every run is a row, in order, SI; the file is the same for any number
 of workers. The same command goes on with a file that was broken off. --shard i/n
@@ -53,28 +53,18 @@ parts together. --shard slurm takes i and n from a Slurm job array:
 	f := cmd.Flags()
 	f.StringArrayVar(&o.request.Sets, "set", nil, setHelp)
 	f.StringArrayVar(&o.request.Over, "over", nil, "go over a setting, `SETTING=a:b:n` or SETTING=a:b:n:log; several make a grid, the last goes fastest")
-	f.Int64Var(&o.request.Draws, "draws", 0, "draw the settings of [spread] so many times")
-	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
-	f.StringVar(&o.sampling, "sampling", "", "how draws lie to each other: latin, a Latin hypercube, or independent (default latin)")
-	f.Int64Var(&o.request.Seed, "seed", 1, "seed of the draws")
-	f.StringVar(&o.request.Lane, "lane", scenarios.Configured, "the lane that is judged")
-	f.StringVar(&o.csv, "csv", "", "write every run to this CSV `file`, with its provenance beside it")
-	f.StringVar(&o.png, "png", "", "draw the summary into this `file`, .png or .svg")
+	f.Int64Var(&o.request.Draws, "draws", 0, "draw the settings of [spread] `N` times")
+	f.StringVar(&o.law, "law", "", "the `LAW` of the draws: uniform, or normal with the ends at three standard deviations (default: uniform)")
+	f.StringVar(&o.sampling, "sampling", "", "the `SAMPLING` of the draws: latin, a Latin hypercube, or independent (default: latin)")
+	f.Int64Var(&o.request.Seed, "seed", 1, "seed `N` of the draws")
+	f.StringVar(&o.request.Lane, "lane", scenarios.Configured, "judge the lane of this `NAME`")
+	f.StringVar(&o.csv, "csv", "", "write every run to this CSV `FILE`, with its provenance beside it")
+	f.StringVar(&o.png, "png", "", "draw the summary into this `FILE`, PNG or SVG by its ending")
 	f.StringVar(&o.shard, "shard", "", "do one part of the runs, `i/n`, or slurm inside a job array")
-	f.IntVar(&o.workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
-	f.BoolVar(&o.force, "force", false, "begin anew where files of another study are in the way")
+	f.IntVar(&o.workers, "workers", 0, "make `N` runs at once (default: as many as there are cores)")
+	f.BoolVar(&o.force, "force", false, "overwrite existing files, also those of another study")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
-}
-
-// oneScenario asks for exactly one SCENARIO.
-func oneScenario(command string) cobra.PositionalArgs {
-	return func(_ *cobra.Command, args []string) error {
-		if len(args) != 1 {
-			return fmt.Errorf("%s takes one SCENARIO: a file, or an embedded one (antelag scenarios lists them)", command)
-		}
-		return nil
-	}
 }
 
 func (o *sweepOptions) run(cmd *cobra.Command, args []string) error {

@@ -32,7 +32,8 @@ split into the two: what synchronization costs (actuator, compensator, sensors,
 against the same slow test with perfect ones) and what lost rate effects cost (that
 perfect slow test against the reference at real speed).
 
-Names the fastest slowdown that passes [accept]: exit 0, or 1 when none does.
+Names the fastest slowdown that passes [accept]. Exit code: 0 there is one, 1 there is
+none, 2 bad input.
 
 ` + cautions,
 		Args:              oneScenario("tempo"),
@@ -42,10 +43,10 @@ Names the fastest slowdown that passes [accept]: exit 0, or 1 when none does.
 	f := cmd.Flags()
 	f.StringArrayVar(&o.sets, "set", nil, setHelp)
 	f.StringVar(&o.slowdowns, "slowdown", tempo.Default, "the slowdowns `a:b:n`, n of them from a to b, evenly in the logarithm")
-	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "the lane that is judged")
-	f.StringVar(&o.png, "png", "", "draw everything into this `file`, .png or .svg")
-	f.IntVar(&o.options.Workers, "workers", 0, "how many slowdowns are run at once (default: as many as there are cores)")
-	f.BoolVar(&o.force, "force", false, "overwrite an existing file")
+	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "judge the lane of this `NAME`")
+	f.StringVar(&o.png, "png", "", "draw everything into this `FILE`, PNG or SVG by its ending")
+	f.IntVar(&o.options.Workers, "workers", 0, "run `N` slowdowns at once (default: as many as there are cores)")
+	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
 }

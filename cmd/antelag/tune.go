@@ -39,7 +39,8 @@ command velocity and noise gain must be within what is asked for.
 
 The search goes wide, then close, and is the same for a seed and any number of
 workers. --record keeps all that was tried; the same command goes on with it.
---write makes a new scenario file of the best. Exit 0 when a setting passes.
+--write makes a new scenario file of the best. Exit code: 0 a setting passes, 1 none
+does, 2 bad input.
 
 ` + cautions,
 		Args:              oneScenario("tune"),
@@ -49,22 +50,22 @@ workers. --record keeps all that was tried; the same command goes on with it.
 	f := cmd.Flags()
 	f.StringArrayVar(&o.options.Sets, "set", nil, setHelp)
 	f.StringArrayVar(&o.options.Over, "over", nil, "tune a setting, `SETTING=a:b` or SETTING=a:b:log; may be repeated")
-	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "the lane that is judged")
-	f.StringVar(&o.options.Figure, "figure", "", "the figure that is made small (default response_error, or nrmse without a structure)")
-	f.Float64Var(&o.options.Quantile, "quantile", 1, "the share of the runs that it stands for; 1 is the worst case")
-	f.IntVar(&o.options.Draws, "draws", 20, "how many draws from [spread] a setting is judged by")
-	f.StringVar(&o.law, "law", "", "how they are drawn: uniform, or normal with the ends at three standard deviations (default uniform)")
-	f.Int64Var(&o.options.Seed, "seed", 1, "seed of draws and search")
-	f.StringVar(&o.energy, "energy-margin", "", "least energy margin over all runs (default that of [accept])")
-	f.StringVar(&o.delay, "delay-margin", "0 s", "least delay margin; 0 s: the loop must be stable")
-	f.StringVar(&o.velocity, "command-velocity", "", "largest velocity that is commanded, like \"0.5 m/s\" (default what trips the channel)")
-	f.StringVar(&o.noise, "noise-gain", "", "largest gain of the command over a target of up to 50 Hz, like 8")
-	f.Int64Var(&o.options.Runs, "runs", 0, "about how many runs may be made")
-	f.StringVar(&o.time, "time", "", "how long the search may take, like \"20 s\"")
-	f.IntVar(&o.options.Workers, "workers", 0, "how many runs are made at once (default: as many as there are cores)")
-	f.StringVar(&o.record, "record", "", "keep all that was tried in this CSV `file`, and go on with it")
-	f.StringVar(&o.write, "write", "", "write the scenario with the best settings, if they pass, to this `file`")
-	f.StringVar(&o.png, "png", "", "draw accuracy against margin into this `file`, .png or .svg")
+	f.StringVar(&o.options.Lane, "lane", scenarios.Configured, "judge the lane of this `NAME`")
+	f.StringVar(&o.options.Figure, "figure", "", "make the figure of this `NAME` small (default: response_error, or nrmse without a structure)")
+	f.Float64Var(&o.options.Quantile, "quantile", 1, "the `SHARE` of the runs that it stands for; 1 is the worst case")
+	f.IntVar(&o.options.Draws, "draws", 20, "judge a setting by `N` draws from [spread]")
+	f.StringVar(&o.law, "law", "", "the `LAW` of the draws: uniform, or normal with the ends at three standard deviations (default: uniform)")
+	f.Int64Var(&o.options.Seed, "seed", 1, "seed `N` of draws and search")
+	f.StringVar(&o.energy, "energy-margin", "", "keep the energy margin of all runs to this `RATIO` at least (default: that of [accept])")
+	f.StringVar(&o.delay, "delay-margin", "0 s", "keep the delay margin to this `TIME` at least; 0 s: the loop must be stable")
+	f.StringVar(&o.velocity, "command-velocity", "", "keep commands to this `VELOCITY` at the most, like \"0.5 m/s\" (default: what trips the channel)")
+	f.StringVar(&o.noise, "noise-gain", "", "keep the gain of the command over a target of up to 50 Hz to this `RATIO` at the most, like 8")
+	f.Int64Var(&o.options.Runs, "runs", 0, "make about `N` runs at the most")
+	f.StringVar(&o.time, "time", "", "search for this `TIME` at the most, like \"20 s\"")
+	f.IntVar(&o.options.Workers, "workers", 0, "make `N` runs at once (default: as many as there are cores)")
+	f.StringVar(&o.record, "record", "", "keep all that was tried in this CSV `FILE`, and go on with it")
+	f.StringVar(&o.write, "write", "", "write the scenario with the best settings, if they pass, to this `FILE`")
+	f.StringVar(&o.png, "png", "", "draw accuracy against margin into this `FILE`, PNG or SVG by its ending")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
 	f.BoolVar(&o.json, "json", false, "print one JSON object instead of the table")
 	return cmd
