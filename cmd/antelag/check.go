@@ -4,12 +4,10 @@ import (
 	"bytes"
 	"context"
 	"errors"
-	"fmt"
 	"time"
 
 	"github.com/spf13/cobra"
 
-	"antelag/scenarios/accept/baseline"
 	"antelag/scenarios/accept/check"
 )
 
@@ -116,10 +114,7 @@ func (o *checkOptions) writeJUnit(report *check.Report, began time.Time) error {
 	if err := report.WriteJUnit(&text, version(), began); err != nil {
 		return err
 	}
-	if err := baseline.Replace(o.junit, text.Bytes()); err != nil {
-		return fmt.Errorf("--junit: %w", err)
-	}
-	return nil
+	return saveFile("--junit", o.junit, o.force, text.Bytes)
 }
 
 // ending turns a report into the exit code, which says the worst: what did not

@@ -11,6 +11,7 @@ import (
 
 	"golang.org/x/term"
 
+	"antelag/scenarios/outfile"
 	"antelag/scenarios/report/figure"
 )
 
@@ -122,7 +123,7 @@ func saveFile(flag, path string, force bool, data func() []byte) error {
 	if path == "" {
 		return nil
 	}
-	if err := figure.WriteFile(path, data(), force); err != nil {
+	if err := outfile.Write(path, data(), force); err != nil {
 		return fmt.Errorf("%s: %w", flag, err)
 	}
 	return nil

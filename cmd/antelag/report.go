@@ -14,6 +14,7 @@ import (
 
 	"antelag/scenarios"
 	"antelag/scenarios/accept"
+	"antelag/scenarios/outfile"
 	"antelag/scenarios/report"
 	"antelag/scenarios/report/figure"
 )
@@ -210,7 +211,7 @@ func (o *reportOptions) write(page *report.Page) ([]string, error) {
 			}
 		}
 	}
-	if err := figure.WriteFile(o.out, html.Bytes(), o.force); err != nil {
+	if err := outfile.Write(o.out, html.Bytes(), o.force); err != nil {
 		return nil, &failure{fmt.Errorf("-o: %w", err)}
 	}
 	return paths, nil

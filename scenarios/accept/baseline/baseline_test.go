@@ -4,8 +4,6 @@ import (
 	"bytes"
 	"context"
 	"math"
-	"os"
-	"path/filepath"
 	"regexp"
 	"slices"
 	"strings"
@@ -272,42 +270,4 @@ func TestApart(t *testing.T) {
 			t.Errorf("%g, %g: %q, %q", c.was, c.is, a, b)
 		}
 	}
-}
-
-// A file is replaced whole or stays, whatever it is.
-func TestReplace(t *testing.T) {
-	t.Parallel()
-	dir := t.TempDir()
-	path := filepath.Join(dir, "x.baseline.toml")
-	check := func(want string) {
-		t.Helper()
-		if got, err := os.ReadFile(path); err != nil || string(got) != want {
-			t.Errorf("%q, %v", got, err)
-		}
-		if names, err := os.ReadDir(dir); err != nil || len(names) > 2 {
-			t.Errorf("left behind: %v, %v", names, err)
-		}
-	}
-	for _, content := range []string{"one", "two, which is longer", "3"} {
-		if err := Replace(path, []byte(content)); err != nil {
-			t.Fatal(err)
-		}
-		check(content)
-	}
-	if err := os.Symlink(path, filepath.Join(dir, "link")); err != nil {
-		t.Fatal(err)
-	}
-	if err := Replace(filepath.Join(dir, "link"), []byte("through")); err != nil {
-		t.Fatal(err)
-	}
-	check("through")
-	if info, err := os.Lstat(filepath.Join(dir, "link")); err != nil || info.Mode()&os.ModeSymlink == 0 {
-		t.Errorf("the link is gone: %v, %v", info, err)
-	}
-	for _, bad := range []string{filepath.Join(path, "y"), filepath.Join(dir, "nowhere", "y"), "/dev/full"} {
-		if err := Replace(bad, []byte("text")); err == nil {
-			t.Errorf("%s was written", bad)
-		}
-	}
-	check("through")
 }

@@ -10,13 +10,12 @@ package figure
 
 import (
 	"bytes"
-	"errors"
 	"fmt"
 	"io"
-	"io/fs"
-	"os"
 	"path/filepath"
 	"strings"
+
+	"antelag/scenarios/outfile"
 )
 
 // Figure is one picture of one or more panels, one below the other, their
@@ -129,76 +128,5 @@ func Save(path string, f Figure, force bool) error {
 	if err := f.Write(&picture, format); err != nil {
 		return err
 	}
-	return WriteFile(path, picture.Bytes(), force)
-}
-
-// WriteFile writes a whole file at once. It must not exist unless force is set;
-// the error is then fs.ErrExist. One that cannot be written to its end is not
-// there afterwards, or still the one that was there before.
-func WriteFile(path string, data []byte, force bool) error {
-	info, err := os.Stat(path)
-	switch {
-	case errors.Is(err, fs.ErrNotExist):
-		return writeNew(path, data)
-	case err != nil:
-		return err
-	case info.IsDir():
-		return fmt.Errorf("%s: %w and is a directory; a file name is needed", path, fs.ErrExist)
-	case !force:
-		return fmt.Errorf("%s: %w; --force overwrites it", path, fs.ErrExist)
-	case !info.Mode().IsRegular(): // a device, a pipe: nothing in it to lose
-		f, err := os.OpenFile(path, os.O_WRONLY, 0)
-		if err != nil {
-			return err
-		}
-		_, err = f.Write(data)
-		return errors.Join(err, f.Close())
-	}
-	return replace(path, data, info.Mode().Perm())
-}
-
-func writeNew(path string, data []byte) error {
-	f, err := os.OpenFile(path, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o644)
-	if err != nil {
-		return err
-	}
-	if err := fillFile(f, data); err != nil {
-		os.Remove(path) //nolint:errcheck // there is an error to report already
-		return err
-	}
-	return nil
-}
-
-// replace writes beside the old file and puts the new one in its place when it
-// is whole.
-func replace(path string, data []byte, mode fs.FileMode) error {
-	path, err := filepath.EvalSymlinks(path)
-	if err != nil {
-		return err
-	}
-	f, err := os.CreateTemp(filepath.Dir(path), "."+filepath.Base(path)+".*")
-	if err != nil {
-		return &fs.PathError{Op: "write", Path: path, Err: errors.Unwrap(err)}
-	}
-	err = fillFile(f, data)
-	if err == nil {
-		err = os.Chmod(f.Name(), mode)
-	}
-	if err == nil {
-		err = os.Rename(f.Name(), path)
-	}
-	if err != nil {
-		os.Remove(f.Name()) //nolint:errcheck // there is an error to report already
-		return &fs.PathError{Op: "write", Path: path, Err: errors.Unwrap(err)}
-	}
-	return nil
-}
-
-// fillFile writes all data and closes the file.
-func fillFile(f *os.File, data []byte) error {
-	_, err := f.Write(data)
-	if e := f.Close(); err == nil {
-		err = e
-	}
-	return err
+	return outfile.Write(path, picture.Bytes(), force)
 }

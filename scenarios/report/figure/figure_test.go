@@ -285,18 +285,3 @@ func TestSave(t *testing.T) {
 		t.Error("a file was taken for a directory")
 	}
 }
-
-// A full disk is an error; a file that was there before stays, one that is half
-// written does not.
-func TestFullDisk(t *testing.T) {
-	if _, err := os.Stat("/dev/full"); err != nil {
-		t.Log("this system has no /dev/full; nothing to see")
-		return
-	}
-	if err := WriteFile("/dev/full", []byte("x"), true); err == nil || !strings.Contains(err.Error(), "no space left") {
-		t.Error(err)
-	}
-	if _, err := os.Stat("/dev/full"); err != nil {
-		t.Error("the device was taken away")
-	}
-}
