@@ -1,7 +1,6 @@
 package stability
 
 import (
-	"cmp"
 	"errors"
 	"math"
 	"math/cmplx"
@@ -9,6 +8,7 @@ import (
 
 	"antelag/compensator"
 	"antelag/rtloop"
+	"antelag/rtloop/substructure"
 )
 
 // Model is a linear loop as its characteristic function. With
@@ -100,47 +100,26 @@ func (m *Model) measure() {
 	}
 }
 
-// setStructure disturbs what the integrator carries.
+// setStructure disturbs what the integrator carries: displacements, velocities,
+// accelerations, and its memory.
 func (m *Model) setStructure(linear *rtloop.Loop) error {
-	in, s := linear.Integrator(), linear.Structure()
-	levels, extra := s.N(), len(in.Memory())
-	n := 3*levels + extra
-	state, load := make([]float64, n), make([]float64, levels)
-	a := make([]float64, n*n)
+	st := &stepper{in: linear.Integrator(), s: linear.Structure()}
+	st.load = make([]float64, m.levels)
+	n := 3*m.levels + len(st.in.Memory())
+	st.state = make([]float64, n)
+	velocity, acceleration := linear.Rates()
 	rows := make([][3][]float64, linear.Channels())
 	for j := range rows {
 		rows[j] = [3][]float64{make([]float64, n), make([]float64, n), make([]float64, n)}
 	}
-	velocity, acceleration := linear.Rates()
-	set := func(i int) {
-		clear(state)
-		if i >= 0 {
-			state[i] = 1
-		}
-		in.SetState(state[:levels], state[levels:2*levels], state[2*levels:3*levels])
-		copy(in.Memory(), state[3*levels:])
-	}
-	read := func(each func(i int, v float64)) {
-		for i := range levels {
-			each(i, in.X()[i])
-			each(levels+i, in.V()[i])
-			each(2*levels+i, in.A()[i])
-		}
-		for i, v := range in.Memory() {
-			each(3*levels+i, v)
-		}
-	}
+	a := make([]float64, n*n)
 	for k := range n {
-		set(k)
-		in.Predict()
-		for j := range rows {
-			rows[j][0][k] = s.Project(in.X(), j)
-			rows[j][1][k] = s.Project(in.V(), j) * velocity
-			rows[j][2][k] = s.Project(in.A(), j) * acceleration
+		for i, v := range st.step(k, -1) {
+			a[i*n+k] = v
 		}
-		clear(load)
-		in.Correct(load)
-		read(func(i int, v float64) { a[i*n+k] = v })
+		for j := range rows {
+			rows[j][0][k], rows[j][1][k], rows[j][2][k] = st.target(j, velocity, acceleration)
+		}
 	}
 	var err error
 	if m.structure, err = newTransfer(n, a); err != nil {
@@ -148,22 +127,52 @@ func (m *Model) setStructure(linear *rtloop.Loop) error {
 	}
 	m.states += n
 	for j := range rows {
-		set(-1)
-		in.Predict()
-		clear(load)
-		s.AddForce(load, j, 1)
-		in.Correct(load)
-		b := make([]float64, n)
-		read(func(i int, v float64) { b[i] = v })
-		m.forces = append(m.forces, complexes(m.structure.inward(b)))
+		m.forces = append(m.forces, complexes(m.structure.inward(st.step(-1, j))))
 		c := channelBlock{gain: 1}
 		for i := range c.c {
 			c.c[i] = m.structure.outward(rows[j][i])
 		}
 		m.channels = append(m.channels, c)
 	}
-	set(-1)
+	st.set(-1)
 	return nil
+}
+
+// stepper lets an integrator do single steps.
+type stepper struct {
+	in          substructure.Integrator
+	s           *substructure.Structure
+	state, load []float64
+	aimed       [3][]float64 // displacements, velocities, accelerations after Predict
+}
+
+// set puts the integrator at rest, but for value k, which is 1; −1: none.
+func (st *stepper) set(k int) {
+	n := len(st.load)
+	clear(st.state)
+	if k >= 0 {
+		st.state[k] = 1
+	}
+	st.in.SetState(st.state[:n], st.state[n:2*n], st.state[2*n:3*n])
+	copy(st.in.Memory(), st.state[3*n:])
+}
+
+// step does one from value k, under a unit of force of a channel; −1: none.
+func (st *stepper) step(k, channel int) []float64 {
+	st.set(k)
+	st.in.Predict()
+	st.aimed = [3][]float64{slices.Clone(st.in.X()), slices.Clone(st.in.V()), slices.Clone(st.in.A())}
+	clear(st.load)
+	if channel >= 0 {
+		st.s.AddForce(st.load, channel, 1)
+	}
+	st.in.Correct(st.load)
+	return slices.Concat(st.in.X(), st.in.V(), st.in.A(), st.in.Memory())
+}
+
+// target is what a channel was told in the last step, in physical units.
+func (st *stepper) target(channel int, velocity, acceleration float64) (x, v, a float64) {
+	return st.s.Project(st.aimed[0], channel), st.s.Project(st.aimed[1], channel) * velocity, st.s.Project(st.aimed[2], channel) * acceleration
 }
 
 // response is what a compensator makes of one tick of displacement, velocity and
@@ -241,8 +250,4 @@ func (t taps) sum(lz, w complex128) complex128 {
 		sum += complex(t[i].weight, 0) * power
 	}
 	return sum
-}
-
-func sortTerms(terms []delayed) {
-	slices.SortFunc(terms, func(a, b delayed) int { return cmp.Compare(a.ticks, b.ticks) })
 }

@@ -1,7 +1,9 @@
 package stability
 
 import (
+	"cmp"
 	"math"
+	"slices"
 
 	"antelag/plant"
 )
@@ -154,80 +156,89 @@ func (p *probe) onlyHandedOn(low, high int) bool {
 	return true
 }
 
-// line says that a state is nothing but the command so many ticks ago, times gain.
+// line says that a value is nothing but the command so many ticks ago, times gain.
 type line struct {
 	is    bool
 	ticks float64
 	gain  float64
 }
 
-// reduce parts the states into those that only pass the command on and the core.
-// Column n is that of the command, row n that of the force.
-func reduce(n int, columns [][]entry) (*plantBlock, error) {
-	feeds := make([]int, n+1) // how many feed a row
-	from, gain := make([]int, n+1), make([]float64, n+1)
+// linesFrom follows the command, value n, along the rows that are fed by one value
+// alone.
+func linesFrom(n int, columns [][]entry) (lines []line, fed []bool) {
+	feeds, from := make([]int, n+1), make([]int, n+1)
 	for j, column := range columns {
 		for _, e := range column {
 			feeds[e.row]++
-			from[e.row], gain[e.row] = j, e.value
+			from[e.row] = j
 		}
 	}
-	// From the command along the rows that are fed by one value alone.
-	lines := make([]line, n+1)
+	lines, fed = make([]line, n+1), make([]bool, n+1)
+	for i := range fed {
+		fed[i] = feeds[i] > 0
+	}
 	lines[n] = line{is: true, gain: 1}
-	for queue := []int{n}; len(queue) > 0; {
+	for queue := []int{n}; len(queue) > 0; queue = queue[1:] {
 		j := queue[0]
-		queue = queue[1:]
 		for _, e := range columns[j] {
 			if i := e.row; i < n && !lines[i].is && feeds[i] == 1 && from[i] == j {
-				lines[i] = line{is: true, ticks: lines[j].ticks + 1, gain: lines[j].gain * gain[i]}
+				lines[i] = line{is: true, ticks: lines[j].ticks + 1, gain: lines[j].gain * e.value}
 				queue = append(queue, i)
 			}
 		}
 	}
-	place := make([]int, n+1)
-	m := 0
-	for i := range n {
+	return lines, fed
+}
+
+// reduce parts the values into those that only pass the command on and the core.
+// Column n is that of the command, row n that of the force.
+func reduce(n int, columns [][]entry) (*plantBlock, error) {
+	lines, fed := linesFrom(n, columns)
+	place, m := make([]int, n+1), 0 // in the core; −1: none
+	for i := range place {
 		place[i] = -1
-		if !lines[i].is && (feeds[i] > 0) {
+		if i < n && !lines[i].is && fed[i] { // a value that nothing keeps up is none
 			place[i] = m
 			m++
 		}
 	}
 	a, c := make([]float64, m*m), make([]float64, m)
-	raw := map[float64]*delayed{}
+	terms := map[float64]*delayed{}
 	for j, column := range columns {
 		for _, e := range column {
-			inCore := e.row < n && place[e.row] >= 0
+			inCore, force := e.row < n && place[e.row] >= 0, e.row == n
 			switch {
-			case !lines[j].is && place[j] < 0: // a value that nothing keeps up
-			case !lines[j].is && inCore:
-				a[place[e.row]*m+place[j]] = e.value
-			case !lines[j].is && e.row == n:
-				c[place[j]] = e.value
-			case lines[j].is && (inCore || e.row == n):
-				t := raw[lines[j].ticks]
+			case lines[j].is && (inCore || force):
+				t := terms[lines[j].ticks]
 				if t == nil {
 					t = &delayed{ticks: lines[j].ticks, b: make([]float64, m)}
-					raw[t.ticks] = t
+					terms[t.ticks] = t
 				}
-				if e.row == n {
+				if force {
 					t.d += e.value * lines[j].gain
 				} else {
 					t.b[place[e.row]] += e.value * lines[j].gain
 				}
+			case place[j] >= 0 && inCore:
+				a[place[e.row]*m+place[j]] = e.value
+			case place[j] >= 0 && force:
+				c[place[j]] = e.value
 			}
 		}
 	}
+	return newReduced(m, a, c, terms)
+}
+
+func newReduced(m int, a, c []float64, terms map[float64]*delayed) (*plantBlock, error) {
 	core, err := newTransfer(m, a)
 	if err != nil {
 		return nil, err
 	}
 	p := &plantBlock{core: core, c: core.outward(c)}
-	for _, t := range raw {
+	for _, t := range terms {
 		t.b = core.inward(t.b)
 		p.terms = append(p.terms, *t)
 	}
-	sortTerms(p.terms)
+	slices.SortFunc(p.terms, func(a, b delayed) int { return cmp.Compare(a.ticks, b.ticks) })
 	return p, nil
 }

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"strconv"
 	"strings"
 
 	"antelag/scenarios/quantity"
@@ -33,10 +34,7 @@ func (g *Grid) Draw(w io.Writer, columns int) error {
 	rows := min(max(columns*3/10, 12), 32)
 	grid := canvas.NewGrid(columns, rows)
 	x, y := unitFor(&g.X), unitFor(&g.Y)
-	plot := canvas.Plot{
-		X: canvas.Axis{Lo: x.from(g.X.At(0)), Hi: x.from(g.X.At(g.X.N - 1)), Unit: x.name},
-		Y: canvas.Axis{Lo: y.from(g.Y.At(0)), Hi: y.from(g.Y.At(g.Y.N - 1)), Unit: y.name},
-	}
+	plot := canvas.Plot{X: axisOf(&g.X, x), Y: axisOf(&g.Y, y)}
 	plot.Begin(grid.Whole())
 	plot.End()
 	area := plot.Area()
@@ -57,6 +55,16 @@ func (g *Grid) Draw(w io.Writer, columns int) error {
 	g.legend(&b)
 	_, err := io.WriteString(w, b.String())
 	return err
+}
+
+// axisOf is the axis of a range; a logarithmic one is even in the logarithm.
+func axisOf(r *Range, u unit) canvas.Axis {
+	a := canvas.Axis{Lo: u.from(r.Low), Hi: u.from(r.High), Unit: u.name}
+	if r.Log {
+		a.Lo, a.Hi = math.Log10(a.Lo), math.Log10(a.Hi)
+		a.Label = func(v float64) string { return strconv.FormatFloat(math.Pow(10, v), 'g', 2, 64) }
+	}
+	return a
 }
 
 func nearest(i, of, n int) int { return min(n-1, int((float64(i)+0.5)/float64(of)*float64(n))) }
