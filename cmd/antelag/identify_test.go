@@ -1,6 +1,7 @@
 package main
 
 import (
+	"context"
 	"fmt"
 	"math"
 	"os"
@@ -104,7 +105,11 @@ func TestIdentifyInterrupted(t *testing.T) {
 	if err := exec.Command("mkfifo", fifo).Run(); err != nil {
 		t.Fatal(err)
 	}
-	cmd := command(dir, "identify", "endless.csv")
+	ctx, interrupt := context.WithCancel(context.Background())
+	defer interrupt()
+	cmd := exec.CommandContext(ctx, binary, "identify", "endless.csv")
+	cmd.Dir = dir
+	cmd.Cancel = func() error { return cmd.Process.Signal(os.Interrupt) }
 	go func() {
 		f, err := os.OpenFile(fifo, os.O_WRONLY, 0)
 		if err != nil {
@@ -117,7 +122,7 @@ func TestIdentifyInterrupted(t *testing.T) {
 				return
 			}
 			if k == 20000 {
-				cmd.Process.Signal(os.Interrupt) //nolint:errcheck // it may be gone
+				interrupt()
 			}
 		}
 	}()

@@ -43,7 +43,10 @@ does one part of n and writes FILE.i-of-n.csv; "antelag gather FILE.csv" puts al
 parts together. --shard slurm takes i and n from a Slurm job array:
 
     sbatch --array=1-20 --wrap "antelag sweep mine.toml --draws 100000 \
-        --csv mine.csv --shard slurm --workers 1"
+        --csv mine.csv --shard slurm --workers 1; [ \$? -le 1 ]"
+
+(exit 1 says that some runs fail, which is no failure of the task). A task that is
+requeued goes on where it was.
 
 ` + cautions,
 		Args:              oneScenario("sweep"),

@@ -58,23 +58,18 @@ func (r *Result) Pass() bool { return r.Best != nil && r.Problem.Pass(r.Best) }
 // alike is how near two figures are that count as equally good.
 const alike = 0.01
 
-// choose takes the best of all candidates; of those that are as good but for 1 %,
-// the one with the most margin, as accuracy that cannot be told apart is not worth
-// any.
+// choose takes the best of all candidates; of those that pass and are as good but
+// for 1 %, the gentlest, the one with the least noise gain: accuracy that cannot be
+// told apart is not worth any.
 func (s *searcher) choose(all []*Candidate) *Candidate {
-	best, m := all[0], s.margin()
+	best := all[0]
+	m := slices.IndexFunc(s.Measures, func(m Measure) bool { return m.Name == "noise_gain" })
 	if !s.Pass(best) {
 		return best
 	}
 	least := s.Column.Bad(best.Figure)
-	rank := func(c *Candidate) float64 {
-		if s.Measures[m].AtLeast {
-			return -c.Measured[m]
-		}
-		return c.Measured[m]
-	}
 	for _, c := range all {
-		if s.Pass(c) && s.Column.Bad(c.Figure) <= least+alike*math.Abs(least) && rank(c) < rank(best) {
+		if s.Pass(c) && s.Column.Bad(c.Figure) <= least+alike*math.Abs(least) && c.Measured[m] < best.Measured[m] {
 			best = c
 		}
 	}
