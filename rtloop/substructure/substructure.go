@@ -69,10 +69,6 @@ func (s *Structure) Stiffness() mat.Symmetric { return s.stiffness }
 // with the initial stiffness of hysteretic storeys and of specimens added.
 func (s *Structure) TotalStiffness() mat.Symmetric { return s.total }
 
-// Influence returns ι, the displacement of each level when the ground moves
-// by one. It must not be changed.
-func (s *Structure) Influence() []float64 { return s.influence }
-
 // GroundLoad writes the load −M ι ü_g into p, N, for a ground acceleration
 // ug, m/s².
 func (s *Structure) GroundLoad(p []float64, ug float64) {

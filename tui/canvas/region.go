@@ -98,11 +98,6 @@ func (r Region) TextRight(x, y int, ink Ink, s string) int {
 	return r.Sub(0, y, x, 1).Text(0, 0, ink, s)
 }
 
-// TextCenter writes s in the middle of row y.
-func (r Region) TextCenter(y int, ink Ink, s string) int {
-	return r.Text(max(0, (r.w-Width(s))/2), y, ink, s)
-}
-
 // write sets the runes of s that lie whole between columns 0 and end.
 func (r Region) write(x, y int, ink Ink, s string, end int) int {
 	n := 0

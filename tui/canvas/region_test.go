@@ -59,11 +59,6 @@ func TestTextRight(t *testing.T) {
 			t.Errorf("before column %d: %q, want %q", c.x, got, c.want)
 		}
 	}
-	g := NewGrid(9, 1)
-	g.Whole().TextCenter(0, Plain, "abc")
-	if got := g.String(); got != "   abc" {
-		t.Errorf("centred %q", got)
-	}
 }
 
 func TestSubIsTheOverlap(t *testing.T) {
@@ -82,34 +77,6 @@ func TestSubIsTheOverlap(t *testing.T) {
 		s := r.Sub(c.in[0], c.in[1], c.in[2], c.in[3])
 		if got := [4]int{s.x, s.y, s.w, s.h}; got != c.want {
 			t.Errorf("Sub%v: %v, want %v", c.in, got, c.want)
-		}
-	}
-}
-
-func TestSplitsFillTheRegion(t *testing.T) {
-	for _, c := range []struct {
-		total int
-		parts []Part
-		want  []int
-	}{
-		{24, []Part{Cells(1), Share(1), Cells(1)}, []int{1, 22, 1}},
-		{10, []Part{Share(1), Share(1), Share(1)}, []int{3, 4, 3}},
-		{80, []Part{Share(2), Share(1)}, []int{53, 27}},
-		{5, []Part{Cells(3), Cells(3), Share(1)}, []int{3, 2, 0}},
-		{5, []Part{Share(1), Cells(9)}, []int{0, 5}},
-		{5, []Part{Cells(2)}, []int{2}},
-		{5, []Part{Cells(-2), Share(math.NaN()), Share(math.Inf(1)), Share(-1), Share(0.1)}, []int{0, 0, 0, 0, 5}},
-		{0, []Part{Share(1), Cells(1)}, []int{0, 0}},
-		{5, nil, []int{}},
-	} {
-		g := NewGrid(c.total, c.total)
-		at := 0
-		columns := g.Whole().SplitColumns(c.parts...)
-		for i, r := range g.Whole().SplitRows(c.parts...) {
-			if r.h != c.want[i] || r.y != at || columns[i].w != c.want[i] || columns[i].x != at {
-				t.Errorf("%d in %v: part %d at %d is %d rows, %d columns, want %d", c.total, c.parts, i, at, r.h, columns[i].w, c.want[i])
-			}
-			at += c.want[i]
 		}
 	}
 }

@@ -20,18 +20,11 @@ type Scale struct {
 	Frames    int     // default 40: two seconds at 20 frames a second
 	MinSpan   float64 // smallest span, so that rest does not magnify noise; default none
 
-	fixed    bool
 	shown    bool // lo and hi hold
 	set      bool // they come from data that moved
 	lo, hi   float64
 	idle     int     // frames in a row that filled less than Share
 	low, top float64 // extent of these frames
-}
-
-// FixedScale is a scale that never moves.
-func FixedScale(lo, hi float64) Scale {
-	lo, hi = properRange(lo, hi)
-	return Scale{fixed: true, shown: true, set: true, lo: lo, hi: hi}
 }
 
 // Bounds are the bounds now; 0 and 1, or ±1 when symmetric, before any data.
@@ -45,9 +38,9 @@ func (s *Scale) Bounds() (lo, hi float64) {
 	return 0, 1
 }
 
-// Reset forgets all data; a fixed scale stays.
+// Reset forgets all data.
 func (s *Scale) Reset() {
-	s.shown, s.set, s.idle = s.fixed, s.fixed, 0
+	s.shown, s.set, s.idle = false, false, 0
 }
 
 // slack is what data may lie beyond a bound that was meant to be theirs and
@@ -58,7 +51,7 @@ const slack = 1e-9
 // there were none and changes nothing; infinities count as the largest number
 // that can be plotted. It returns the bounds.
 func (s *Scale) Update(lo, hi float64) (float64, float64) {
-	if s.fixed || math.IsNaN(lo) && math.IsNaN(hi) {
+	if math.IsNaN(lo) && math.IsNaN(hi) {
 		return s.Bounds()
 	}
 	lo, hi = s.extent(lo, hi)

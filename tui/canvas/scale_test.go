@@ -45,7 +45,6 @@ func TestScaleBehaviour(t *testing.T) {
 			{1, 0, 0, -0.1, 0.1}, {90, 0, 0.001, -0.1, 0.1}}},
 		{"smallest span keeps the zero of what is never negative", Scale{MinSpan: 10}, []frame{
 			{1, 0, 0.1, 0, 10}, {1, 0, 11, 0, 15}}},
-		{"fixed", FixedScale(-1, 1), []frame{{1, -5, 9, -1, 1}, {99, 0, 0.01, -1, 1}}},
 		{"no data, no change", Scale{}, []frame{{1, 0, 8, 0, 8}, {99, nan, nan, 0, 8}}},
 		{"one side only", Scale{}, []frame{{1, nan, 8, 7, 9}}},
 		{"given the wrong way round", Scale{}, []frame{{1, 8, 0, 0, 8}}},
@@ -72,11 +71,6 @@ func TestScaleReset(t *testing.T) {
 	s.Reset()
 	if lo, hi := s.Update(0, 0.3); lo != 0 || hi != 0.3 {
 		t.Errorf("%v to %v", lo, hi)
-	}
-	f := FixedScale(0, 3)
-	f.Reset()
-	if lo, hi := f.Update(0, 9); lo != 0 || hi != 3 {
-		t.Errorf("fixed: %v to %v", lo, hi)
 	}
 }
 

@@ -107,25 +107,6 @@ func (r *Report) LeastDelay() float64 {
 	return least
 }
 
-// LeastGain returns the least gain margin over the channels and all together: +Inf
-// where there is no limit, and never above 1 for a loop that grows as it is.
-func (r *Report) LeastGain() float64 {
-	least := math.Inf(1)
-	if !r.Stable {
-		least = 1
-	}
-	take := func(m *Margins) {
-		if m.GainMargin.Defined() {
-			least = min(least, float64(m.GainMargin))
-		}
-	}
-	for i := range r.Channels {
-		take(&r.Channels[i].Margins)
-	}
-	take(&r.Together)
-	return least
-}
-
 // limiting names the channel with the least delay margin.
 func (r *Report) limiting() string {
 	name, least := "", math.Inf(1)

@@ -243,18 +243,6 @@ func (p *Replay) Advance(n int) (s *Stretch, ok bool) {
 	return s, true
 }
 
-// Rewind goes back to the beginning of the record, with gauges that have seen
-// nothing.
-func (p *Replay) Rewind() error {
-	again, err := Open(p.path, p.options)
-	if err != nil {
-		return err
-	}
-	p.Close() //nolint:errcheck // it was only read
-	*p = *again
-	return nil
-}
-
 // Err returns the error that ended the record, nil at its end.
 func (p *Replay) Err() error { return p.reader.Err() }
 
