@@ -71,6 +71,9 @@ func (o *marginOptions) run(cmd *cobra.Command, args []string) error {
 	if err != nil {
 		return err
 	}
+	if err := s.CheckLane(o.options.Lane); err != nil {
+		return fmt.Errorf("--lane: %w", err)
+	}
 	bar := newProgress(s.Name)
 	defer bar.clear()
 	defer context.AfterFunc(cmd.Context(), bar.clear)()

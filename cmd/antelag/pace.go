@@ -37,7 +37,7 @@ rate, and measure how late each was. The rate is held if none was later than a
 whole period and 99.9 % were no later than a tenth of it; if none was later than
 a period, but more than one in a thousand later than a tenth, it is held with late
 ticks. Exit code: 0 the rate was held, 1 it was not, 2 bad input.`,
-		Args:              cobra.NoArgs,
+		Args:              noArgument,
 		ValidArgsFunction: cobra.NoFileCompletions,
 		RunE:              o.run,
 	}

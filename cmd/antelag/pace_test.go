@@ -91,7 +91,7 @@ func TestPaceRefused(t *testing.T) {
 		"--rate=2Hz --time=499ms":   "--time: 499ms is below 500 ms",
 		"--time=8d":                 "--time: 8d is above ",
 		"--rtae=2Hz":                "unknown flag: --rtae",
-		"archive":                   "unknown command",
+		"archive":                   `pace takes no argument; there is "archive"`,
 		"--rate=2Hz --time=-1s":     "--time: -1s is below 500 ms",
 		"--json --rate=1e400Hz":     "--rate: ",
 		"--json --time=1s --rate= ": "--rate: no value given",

@@ -1,9 +1,12 @@
 package main
 
 import (
+	"errors"
 	"fmt"
+	"strconv"
 
 	"github.com/spf13/cobra"
+	"github.com/spf13/pflag"
 
 	"antelag/scenarios"
 	"antelag/scenarios/kind"
@@ -42,6 +45,7 @@ func newRoot() *cobra.Command {
 		},
 	}
 	opts.flags(root)
+	root.SetFlagErrorFunc(flagError)
 	root.SetVersionTemplate("antelag {{.Version}}\n")
 	root.AddCommand(
 		newBench(),
@@ -61,7 +65,46 @@ func newRoot() *cobra.Command {
 		newDescribe(),
 		newVersion(),
 	)
+	root.InitDefaultHelpCmd()
+	if help, _, err := root.Find([]string{"help"}); err == nil {
+		help.Args = knownCommand
+	}
 	return root
+}
+
+// flagError says of a number that is none that it is none.
+func flagError(_ *cobra.Command, err error) error {
+	var number *strconv.NumError
+	var flag *pflag.InvalidValueError
+	if !errors.As(err, &number) || !errors.As(err, &flag) {
+		return err
+	}
+	what := "a whole number"
+	switch {
+	case errors.Is(number, strconv.ErrRange):
+		what = "smaller"
+	case number.Func == "ParseFloat":
+		what = "a number"
+	case number.Func == "ParseUint":
+		what = "a whole number from 0 on"
+	}
+	return fmt.Errorf("--%s %s: it must be %s", flag.GetFlag().Name, flag.GetValue(), what)
+}
+
+// knownCommand refuses to explain what is no command.
+func knownCommand(cmd *cobra.Command, args []string) error {
+	if found, _, err := cmd.Root().Find(args); err == nil && found != cmd.Root() {
+		return nil
+	}
+	return noCommand(cmd.Root(), args)
+}
+
+// noArgument refuses arguments of a command that takes none.
+func noArgument(cmd *cobra.Command, args []string) error {
+	if len(args) > 0 {
+		return fmt.Errorf("%s takes no argument; there is %q", cmd.Name(), args[0])
+	}
+	return nil
 }
 
 // noCommand refuses arguments of the bare command: what stands there is meant

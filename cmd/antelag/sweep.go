@@ -136,6 +136,9 @@ func (o *sweepOptions) prepare(name string) (*study.Study, study.Shard, error) {
 	if err != nil {
 		return nil, shard, err
 	}
+	if err := tests[0].CheckLane(o.request.Lane); err != nil {
+		return nil, shard, fmt.Errorf("--lane: %w", err)
+	}
 	st, err := study.New(tests[0], o.request)
 	if err != nil {
 		return nil, shard, err

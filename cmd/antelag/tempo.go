@@ -98,6 +98,9 @@ func (o *tempoOptions) prepare(name string) (*scenarios.Scenario, []float64, err
 	if err != nil {
 		return nil, nil, err
 	}
+	if err := s.CheckLane(o.options.Lane); err != nil {
+		return nil, nil, fmt.Errorf("--lane: %w", err)
+	}
 	slowdowns, err := tempo.Slowdowns(s, o.slowdowns)
 	if err != nil {
 		return nil, nil, fmt.Errorf("--slowdown: %w", err)

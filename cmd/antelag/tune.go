@@ -122,6 +122,9 @@ func (o *tuneOptions) prepare(cmd *cobra.Command, name string) (*tune.Problem, e
 	if err != nil {
 		return nil, err
 	}
+	if err := tests[0].CheckLane(o.options.Lane); err != nil {
+		return nil, fmt.Errorf("--lane: %w", err)
+	}
 	if err := o.readMargin(cmd, tests[0]); err != nil {
 		return nil, err
 	}

@@ -39,7 +39,7 @@ func newVersion() *cobra.Command {
 	return &cobra.Command{
 		Use:   "version",
 		Short: "print the version",
-		Args:  cobra.NoArgs,
+		Args:  noArgument,
 		RunE: func(cmd *cobra.Command, _ []string) error {
 			_, err := fmt.Fprintf(cmd.OutOrStdout(), "antelag %s, %s %s/%s\n", version(), runtime.Version(), runtime.GOOS, runtime.GOARCH)
 			return err

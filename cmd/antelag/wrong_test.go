@@ -127,9 +127,19 @@ func TestWrongUsage(t *testing.T) {
 		{"run rig.toml --log rig.toml --force", "rig.toml is the scenario itself"},
 		{"run rig.toml --log rig --force", "rig.toml is the scenario itself"},
 		{"describe polynomal", `did you mean "polynomial"?`},
+		{"help polynomal", `unknown command "polynomal"`},
+		{"pace now", `pace takes no argument; there is "now"`},
+		{"sweep rig.toml --draws 1e9", "--draws 1e9: it must be a whole number"},
+		{"sweep rig.toml --draws 99999999999999999999", "--draws 99999999999999999999: it must be smaller"},
+		{"handoff rig.toml -o x --seed -1", "--seed -1: it must be a whole number from 0 on"},
+		{"replay x.csv --speed fast", "--speed fast: it must be a number"},
+		{"margin rig.toml --lane latte", `--lane: unknown lane "latte"; did you mean "late"?`},
+		{"tempo rig.toml --lane latte", `--lane: unknown lane "latte"; did you mean "late"?`},
+		{"sweep rig.toml --lane latte --draws 2", `--lane: unknown lane "latte"; did you mean "late"?`},
+		{"tune rig.toml --lane latte --over damper.compensator.delay=5ms:9ms", `--lane: unknown lane "latte"; did you mean "late"?`},
 		{"describe inverse none", "accepts at most 1 arg(s), received 2"},
 		{"scenarios achive", `unknown embedded scenario "achive"; did you mean "archive"?`},
-		{"version 2", "unknown command"},
+		{"version 2", "version takes no argument"},
 	} {
 		antelag(t, dir, strings.Fields(c.args)...).refused(t, c.want)
 		unchanged(t, dir, before)
