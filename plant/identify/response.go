@@ -27,7 +27,7 @@ type spectrum struct {
 	ahead       int     // ticks, by which measured was moved ahead
 	part        float64 // of a tick more, on the straight line to the next sample
 	tick        float64
-	first, last int     // bins of the band
+	first, last int // bins of the band
 	band        [2]float64
 	averages    int
 	narrow      bool    // a single sine, or as good as one

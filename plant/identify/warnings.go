@@ -15,9 +15,6 @@ const (
 	loose = 0.1
 	// sure is how many standard errors a finding must be from nothing.
 	sure = 4.0
-	// steadily is how many a trend must be from none: it is one question, where
-	// the largest difference of many groups is many.
-	steadily = 3.0
 	// plays is the half width of backlash, as a share of the rms motion, from
 	// which it is said.
 	plays = 0.01
@@ -196,41 +193,12 @@ func warnOfAmplitude(res *Result, best *Fit) {
 	far := hi.Delay - lo.Delay
 	differ := far > sure*math.Hypot(lo.DelaySigma, hi.DelaySigma) && far > max(2e-4, 0.03*best.Phase.Value)
 	first, last := res.Groups[0], res.Groups[len(res.Groups)-1]
-	grows, sigma := trend(res.Groups)
-	grows *= last.Amplitude - first.Amplitude
-	sigma *= last.Amplitude - first.Amplitude
-	if steady := math.Abs(grows) > steadily*sigma && math.Abs(grows) > max(2e-4, 0.02*best.Phase.Value); steady && !differ {
+	grows, reach := math.Abs(res.slope.Value), last.Amplitude-first.Amplitude
+	if steady := grows > sure*res.slope.Sigma && grows*reach > max(2e-4, 0.02*best.Phase.Value); steady && !differ {
 		lo, hi = first, last
 	} else if !differ {
 		return
 	}
 	res.warnf("The delay depends on the amplitude: %s at %s, %s at %s.",
 		ms(lo.Delay), mm(lo.Amplitude), ms(hi.Delay), mm(hi.Amplitude))
-}
-
-// trend is the slope of delay over amplitude, s/m, by weighted least squares, and
-// its standard error: that of the groups, or more where they scatter more about
-// the line.
-func trend(groups []Group) (slope, sigma float64) {
-	var w, wa, wd float64
-	for _, g := range groups {
-		weight := 1 / (g.DelaySigma * g.DelaySigma)
-		w += weight
-		wa += weight * g.Amplitude
-		wd += weight * g.Delay
-	}
-	var aa, ad, dd float64
-	for _, g := range groups {
-		weight := 1 / (g.DelaySigma * g.DelaySigma)
-		a, d := g.Amplitude-wa/w, g.Delay-wd/w
-		aa += weight * a * a
-		ad += weight * a * d
-		dd += weight * d * d
-	}
-	left := len(groups) - 2
-	if left < 1 || !(aa > 0) || math.IsInf(w, 0) {
-		return 0, math.Inf(1)
-	}
-	slope = ad / aa
-	return slope, math.Sqrt(max(1, (dd-slope*ad)/float64(left)) / aa)
 }
