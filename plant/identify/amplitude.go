@@ -36,10 +36,10 @@ type window struct {
 
 // groups sorts stretches of the record by how far they move, and finds for each
 // group by how much its delay and gain differ from those of the whole.
-func (f *fitter) groups(fit *Fit) []Group {
+func (f *fitter) groups(fit *Fit) (groups []Group, slope Estimate) {
 	windows := f.windows(fit)
 	if len(windows) < 2*fewestWindows {
-		return nil
+		return nil, slope
 	}
 	largest := 0.0
 	for _, w := range windows {
@@ -49,19 +49,18 @@ func (f *fitter) groups(fit *Fit) []Group {
 	slices.SortFunc(windows, func(a, b window) int { return cmp.Compare(a.amplitude, b.amplitude) })
 	count := min(mostGroups, len(windows)/fewestWindows)
 	if count < 2 || windows[len(windows)-1].amplitude < varied*windows[0].amplitude {
-		return nil
+		return nil, slope
 	}
-	var out []Group
 	for i := range count {
 		var sum window
 		for _, w := range windows[i*len(windows)/count : (i+1)*len(windows)/count] {
 			sum.add(w)
 		}
 		if g, ok := sum.group(fit); ok {
-			out = append(out, g)
+			groups = append(groups, g)
 		}
 	}
-	return out
+	return groups, trend(windows)
 }
 
 func (f *fitter) windows(fit *Fit) []window {

@@ -37,26 +37,14 @@ const batches = 30
 // scatter counts (batch means).
 func (f *fitter) conclude(fit *Fit, got *state, skip int) error {
 	s := fit.shape
-	n, m := len(got.y)-skip, s.n+2
-	cols := make([][]float64, m)
-	for i := range cols {
-		cols[i] = make([]float64, n)
-	}
-	err := f.columns(s, got, skip, true, func(k int, row []float64) {
-		for i, v := range row {
-			cols[i][k-skip] = v
-		}
-	})
+	cols, err := f.columns(s, got, skip, true)
 	if err != nil {
 		return err
 	}
-	r := make([]float64, n)
-	for k := range r {
-		r[k] = f.rec.Measured[k+skip] - got.gain*got.y[k+skip] - got.offset
-	}
+	r := f.residual(got, skip)
 	fit.param = got.p
 	fit.evid = evidence{tick: f.rec.Tick, skip: skip, residual: r, state: got, wider: 1}
-	fit.NRMSE = math.Sqrt(got.rss/float64(n)) / spread(f.rec.Measured[skip:])
+	fit.NRMSE = math.Sqrt(got.rss/float64(len(r))) / spread(f.rec.Measured[skip:])
 	f.estimate(fit, got, covariance(cols, r, &fit.evid.wider))
 	return nil
 }
@@ -201,14 +189,19 @@ func products(cols [][]float64) *mat.SymDense {
 	out := mat.NewSymDense(m, nil)
 	for i := range m {
 		for j := i; j < m; j++ {
-			s := 0.0
-			for k, v := range cols[i] {
-				s += v * cols[j][k]
-			}
-			out.SetSym(i, j, s)
+			out.SetSym(i, j, dot(cols[i], cols[j]))
 		}
 	}
 	return out
+}
+
+func dot(a, b []float64) float64 {
+	s := 0.0
+	b = b[:len(a)]
+	for k, v := range a {
+		s += v * b[k]
+	}
+	return s
 }
 
 func sandwich(bread, meat *mat.SymDense) *mat.SymDense {
@@ -233,10 +226,7 @@ func scattered(cols [][]float64, r []float64) *mat.SymDense {
 	for b := range batches {
 		from, to := b*n/batches, (b+1)*n/batches
 		for i, c := range cols {
-			score[i] = 0
-			for k := from; k < to; k++ {
-				score[i] += c[k] * r[k]
-			}
+			score[i] = dot(c[from:to], r[from:to])
 		}
 		out.SymRankOne(out, 1, mat.NewVecDense(m, score))
 	}
@@ -248,9 +238,7 @@ func regress(cols [][]float64, r []float64) ([]float64, bool) {
 	m := len(cols)
 	slope := make([]float64, m)
 	for i, c := range cols {
-		for k, v := range c {
-			slope[i] += v * r[k]
-		}
+		slope[i] = dot(c, r)
 	}
 	return damped(products(cols), slope, 0, nil)
 }

@@ -165,27 +165,24 @@ func (f *fitter) try(s shape, p []float64, skip int) (*state, error) {
 	return now, nil
 }
 
-// columns calls each with the derivatives of the answer at every sample: to the
-// parameters, the gain and the offset. The answer to a parameter that is a
-// little off comes from the actuator itself.
-func (f *fitter) columns(s shape, now *state, from int, central bool, each func(k int, row []float64)) error {
-	var off [3][]float64
+// columns are the derivatives of the answer from a sample on: to the parameters,
+// the gain and the offset. The answer to a parameter that is a little off comes
+// from the actuator itself.
+func (f *fitter) columns(s shape, now *state, from int, central bool) ([][]float64, error) {
+	cols := make([][]float64, s.n+2)
 	for i := range s.n {
 		d, err := f.derivative(s, now, i, central)
 		if err != nil {
-			return err
+			return nil, err
 		}
-		off[i] = d
-	}
-	row := make([]float64, s.n+2)
-	for k := from; k < len(now.y); k++ {
-		for i := range s.n {
-			row[i] = now.gain * off[i][k]
+		for k := range d {
+			d[k] *= now.gain
 		}
-		row[s.n], row[s.n+1] = now.y[k], 1
-		each(k, row)
+		cols[i] = d[from:]
 	}
-	return nil
+	cols[s.n] = slices.Clone(now.y[from:])
+	cols[s.n+1] = slices.Repeat([]float64{1}, len(now.y)-from)
+	return cols, nil
 }
 
 // derivative is that of the answer to parameter i, by a difference to one side,
@@ -224,19 +221,26 @@ func (f *fitter) derivative(s shape, now *state, i int, central bool) ([]float64
 
 // normal is JᵀJ and Jᵀr.
 func (f *fitter) normal(s shape, now *state, skip int) (*mat.SymDense, []float64, error) {
-	m := s.n + 2
-	sum := make([]float64, m*m)
-	slope := make([]float64, m)
-	err := f.columns(s, now, skip, false, func(k int, row []float64) {
-		r := f.rec.Measured[k] - now.gain*now.y[k] - now.offset
-		for i, a := range row {
-			slope[i] += a * r
-			for j := i; j < m; j++ {
-				sum[i*m+j] += a * row[j]
-			}
-		}
-	})
-	return mat.NewSymDense(m, sum), slope, err
+	cols, err := f.columns(s, now, skip, false)
+	if err != nil {
+		return nil, nil, err
+	}
+	slope := make([]float64, len(cols))
+	r := f.residual(now, skip)
+	for i, c := range cols {
+		slope[i] = dot(c, r)
+	}
+	return products(cols), slope, nil
+}
+
+// residual is what the fit leaves from a sample on.
+func (f *fitter) residual(now *state, from int) []float64 {
+	r := make([]float64, len(now.y)-from)
+	m, y := f.rec.Measured[from:], now.y[from:]
+	for k := range r {
+		r[k] = m[k] - now.gain*y[k] - now.offset
+	}
+	return r
 }
 
 // step is the damped step; a parameter at a bound that would go beyond stays

@@ -94,6 +94,8 @@ type Result struct {
 	Averages     int        // segments of which Response is the mean
 	Groups       []Group    // by amplitude, the smallest first; none if it hardly varies
 	Warnings     []string   // a sentence each
+
+	slope Estimate // of the delay over the amplitude, s/m; none without groups
 }
 
 // strong is the evidence from which a richer kind is believed (Kass & Raftery
@@ -146,7 +148,7 @@ func Identify(ctx context.Context, rec Record, o Options) (*Result, error) {
 	}
 	best := res.Best()
 	res.Response, res.CoherenceMin = spectrum.response(best, rec.Hold)
-	res.Groups = f.groups(best)
+	res.Groups, res.slope = f.groups(best)
 	f.warn(res)
 	return res, nil
 }

@@ -65,6 +65,15 @@ func BenchmarkTable(b *testing.B) {
 				}
 			}
 		}
+		for _, s := range servos {
+			for _, rate := range []float64{256, 1024} {
+				u, y := s.answer(b, rate)
+				for _, level := range levels {
+					line, _, _, ok := s.line(b, u, y, rate, level)
+					fmt.Println(line, ok)
+				}
+			}
+		}
 	}
 }
 

@@ -18,13 +18,16 @@ type Bin struct {
 }
 
 // spectrum is the frequency response of a record, from command to measured.
-// The measured one was moved ahead by a whole number of ticks first, since a
-// delay makes the segments of the two signals see different things, which
-// lowers gain and coherence.
+// The measured one was moved ahead by the first guess of the delay before, since
+// a delay makes the segments of the two signals see different things, which
+// lowers gain and coherence; and where the power falls off steeply, a window lets
+// in the neighbours' phase, which a delay makes another one.
 type spectrum struct {
 	*Spectra
-	shift       float64 // s, by which measured was moved ahead
-	first, last int     // bins of the band
+	ahead       int     // ticks, by which measured was moved ahead
+	part        float64 // of a tick more, on the straight line to the next sample
+	tick        float64
+	first, last int // bins of the band
 	band        [2]float64
 	averages    int
 	narrow      bool    // a single sine, or as good as one
@@ -39,8 +42,12 @@ const outside = 0.01
 // spectrumOf finds the spectra around a first guess of the delay.
 func spectrumOf(rec Record, g guess, segment int) (*spectrum, error) {
 	n := len(rec.Command)
-	ahead := min(max(int(math.Round(g.total/rec.Tick)), 0), n/4)
-	x, y := rec.Command[:n-ahead], rec.Measured[ahead:]
+	whole, part := math.Modf(min(max(g.total/rec.Tick, 0), float64(n/4)))
+	ahead := int(whole)
+	x, y := rec.Command[:n-ahead-1], make([]float64, n-ahead-1)
+	for k := range y {
+		y[k] = rec.Measured[k+ahead] + part*(rec.Measured[k+ahead+1]-rec.Measured[k+ahead])
+	}
 	if segment <= 0 {
 		segment = segmentFor(len(x), rec.Tick)
 	}
@@ -48,7 +55,7 @@ func spectrumOf(rec Record, g guess, segment int) (*spectrum, error) {
 	if err != nil {
 		return nil, err
 	}
-	sp := &spectrum{Spectra: s, shift: float64(ahead) * rec.Tick, averages: s.Segments}
+	sp := &spectrum{Spectra: s, ahead: ahead, part: part, tick: rec.Tick, averages: s.Segments}
 	sp.findBand()
 	return sp, nil
 }
@@ -104,9 +111,16 @@ func (s *spectrum) findBand() {
 	s.narrow = s.last-s.first <= 4
 }
 
-// at is the response at bin i, without the shift.
+// at is the response at bin i, without the shift: that of the straight line
+// between two samples is 1 − part + part·e^(iωT), T the tick. At half the rate and
+// half a tick it is 0, and there is nothing to be told.
 func (s *spectrum) at(i int) complex128 {
-	return s.Response(i) * cmplx.Rect(1, -2*math.Pi*s.Hz[i]*s.shift)
+	turn := 2 * math.Pi * s.Hz[i] * s.tick
+	line := complex(1-s.part, 0) + cmplx.Rect(s.part, turn)
+	if cmplx.Abs(line) < 1e-6 {
+		return 0
+	}
+	return s.Response(i) / line * cmplx.Rect(1, -turn*float64(s.ahead))
 }
 
 // held is by how much the samples of a held command come early: a step is

@@ -175,7 +175,8 @@ func (f *fitter) warnOfBacklash(res *Result, best *Fit) {
 	}
 }
 
-// warnOfAmplitude says where the delay depends on how far the actuator moves.
+// warnOfAmplitude says where the delay depends on how far the actuator moves: if
+// it grows or falls steadily with the amplitude, or else if two groups differ.
 func warnOfAmplitude(res *Result, best *Fit) {
 	if len(res.Groups) < 2 {
 		return
@@ -190,8 +191,14 @@ func warnOfAmplitude(res *Result, best *Fit) {
 		}
 	}
 	far := hi.Delay - lo.Delay
-	if far > sure*math.Hypot(lo.DelaySigma, hi.DelaySigma) && far > max(2e-4, 0.03*best.Phase.Value) {
-		res.warnf("The delay depends on the amplitude: %s at %s, %s at %s.",
-			ms(lo.Delay), mm(lo.Amplitude), ms(hi.Delay), mm(hi.Amplitude))
+	differ := far > sure*math.Hypot(lo.DelaySigma, hi.DelaySigma) && far > max(2e-4, 0.03*best.Phase.Value)
+	first, last := res.Groups[0], res.Groups[len(res.Groups)-1]
+	grows, reach := math.Abs(res.slope.Value), last.Amplitude-first.Amplitude
+	if steady := grows > sure*res.slope.Sigma && grows*reach > max(2e-4, 0.02*best.Phase.Value); steady && !differ {
+		lo, hi = first, last
+	} else if !differ {
+		return
 	}
+	res.warnf("The delay depends on the amplitude: %s at %s, %s at %s.",
+		ms(lo.Delay), mm(lo.Amplitude), ms(hi.Delay), mm(hi.Amplitude))
 }

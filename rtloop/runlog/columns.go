@@ -97,6 +97,9 @@ func (l *layout) choose(o *Options) (*chosen, error) {
 	if err := c.need(l, o); err != nil {
 		return nil, err
 	}
+	if o.Lean {
+		c.strip(o.Need)
+	}
 	return c, nil
 }
 
@@ -253,22 +256,45 @@ func (c *chosen) keep(channel string) error {
 		return fmt.Errorf("no channel is named %q; there are: %s", channel, strings.Join(known, ", "))
 	}
 	c.channels = []Channel{c.channels[j]}
+	c.only(func(col *column) bool {
+		if col.channel >= 0 && col.channel != j {
+			return false
+		}
+		col.channel = min(col.channel, 0)
+		return true
+	})
+	return nil
+}
+
+// strip drops what is not needed.
+func (c *chosen) strip(need []Role) {
+	c.only(func(col *column) bool {
+		if col.channel < 0 {
+			return !col.loose
+		}
+		wanted := slices.Contains(need, col.role)
+		c.channels[col.channel].Has[col.role] = wanted
+		return wanted
+	})
+}
+
+// only drops the columns that are not wanted.
+func (c *chosen) only(wanted func(*column) bool) {
+	time, margin := -1, -1
 	var kept []column
 	for i, col := range c.columns {
-		switch {
-		case i == c.time:
-			c.time = len(kept)
-		case i == c.margin:
-			c.margin = len(kept)
-		case col.channel == j:
-			col.channel = 0
-		default:
+		if !wanted(&col) {
 			continue
+		}
+		switch i {
+		case c.time:
+			time = len(kept)
+		case c.margin:
+			margin = len(kept)
 		}
 		kept = append(kept, col)
 	}
-	c.columns = kept
-	return nil
+	c.columns, c.time, c.margin = kept, time, margin
 }
 
 // need checks that every channel has what was asked for.

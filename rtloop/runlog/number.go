@@ -172,6 +172,9 @@ var missing = map[string]bool{
 // value reads what stands in one cell: a number, or NaN where there is none.
 func value(cell []byte, mark byte) (float64, error) {
 	cell = bytes.TrimSpace(cell)
+	if len(cell) == 0 {
+		return math.NaN(), nil
+	}
 	if n := len(cell); n >= 2 && cell[0] == '"' && cell[n-1] == '"' {
 		cell = bytes.TrimSpace(cell[1 : n-1])
 		mark = ',' // quotes keep it apart from a separator

@@ -18,6 +18,7 @@ type Options struct {
 	Rate    float64
 	Channel string // the one channel to read; "": all
 	Need    []Role // what every channel must have
+	Lean    bool   // read nothing but the time and what is needed; what else there is, holes and slips in it too, is passed over
 }
 
 // Reader reads a log of any form in constant memory and gives it out evenly

@@ -39,7 +39,7 @@ func Of(ctx context.Context, path string, o Options) (*Report, error) {
 	if o.Slowdown != 0 && !(o.Slowdown > 0 && o.Slowdown <= 1e6) {
 		return nil, fmt.Errorf("slowdown: %g is not between 0 and 1e6", o.Slowdown)
 	}
-	o.Log.Need = []runlog.Role{runlog.Command, runlog.Measured}
+	o.Log.Need, o.Log.Lean = []runlog.Role{runlog.Command, runlog.Measured}, true
 	r, err := runlog.Open(path, o.Log)
 	if err != nil {
 		return nil, err
@@ -82,6 +82,9 @@ func one(path string, channels []runlog.Channel) error {
 }
 
 func read(ctx context.Context, r *runlog.Reader, o *Options) (rec identify.Record, err error) {
+	// A little more than expected, so that a guess just short does not double it.
+	room := min(r.Expected()+r.Expected()/32, mostRead)
+	rec.Command, rec.Measured = make([]float64, 0, room), make([]float64, 0, room)
 	for r.Next() && len(rec.Command) < mostRead {
 		if err := ctx.Err(); err != nil {
 			return rec, err
