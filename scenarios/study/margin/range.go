@@ -47,7 +47,7 @@ func checkRanges(s *scenarios.Scenario, x, y *Range) error {
 			return fmt.Errorf("%s: %d values; a map takes 2 to %d", r.Path, r.N, most)
 		}
 	}
-	if full(s, x.Path) == full(s, y.Path) {
+	if study.Same(s, x.Path, y.Path) {
 		return fmt.Errorf("%s: both ranges are of this setting; a map is over two settings", y.Path)
 	}
 	return nil
