@@ -103,7 +103,6 @@ var servos = func() (all []servo) {
 		{name: "the default", set: nums(), stiffness: 5e6, scale: 1},
 		{name: "a soft specimen, no integral", set: nums("ki", 0.0), stiffness: 1e6, scale: 1},
 		{name: "a stiff specimen", set: nums(), stiffness: 20e6, scale: 0.25},
-		{name: "a slow valve, much friction", set: nums("valve_frequency", 40.0, "friction", 5e3), stiffness: 5e6, scale: 0.5},
 	} {
 		for _, m := range motions {
 			p.motion = m.name
@@ -111,6 +110,7 @@ var servos = func() (all []servo) {
 		}
 	}
 	return append(all,
+		servo{"a slow valve, much friction", nums("valve_frequency", 40.0, "friction", 5e3), 5e6, "noise", 0.5, false},
 		servo{"double amplitude", nums(), 5e6, "quake", 2, true},
 		servo{"three quarters of the stall", nums(), 20e6, "quake", 0.5, true},
 		servo{"as fast as the valve lets it", nums(), 5e6, "noise", 2, true})

@@ -354,3 +354,31 @@ func FuzzMapAndUnits(f *testing.F) {
 		ParseUnits(text) //nolint:errcheck // that it ends is all
 	})
 }
+
+// Of a log that is read lean, what is not needed is passed over, holes and slips
+// in it too; what is left is as if the rest were not there.
+func TestLeanReading(t *testing.T) {
+	text := "time_s,a.target_m,a.command_m,a.measured_m,a.force_N,energy_margin\n" +
+		"0,,0,0.5,,\n0.001,1,1,1.5,broken,\n0.002,2,2,2.5,,0.5\n0.003,3,3,3.5,1e99,\n"
+	need := []Role{Command, Measured}
+	if _, err := readWhole(lab(t, text), Options{Need: need}); err == nil {
+		t.Error("whole, it was read")
+	}
+	w, err := readWhole(lab(t, text), Options{Need: need, Lean: true})
+	if err != nil || w.notes != "" || w.n != 4 || w.reader.HasMargin() {
+		t.Fatalf("%d samples, margin %v, notes %q, error %v", w.n, w.reader.HasMargin(), w.notes, err)
+	}
+	c := w.reader.Channels()[0]
+	if c.Name != "a" || c.Has != [roles]bool{Command: true, Measured: true} {
+		t.Errorf("channel %+v", c)
+	}
+	for k := range 4 {
+		if got := w.channels[0]; got[Command][k] != float64(k) || got[Measured][k] != float64(k)+0.5 || got[Target] != nil || got[Force] != nil {
+			t.Errorf("sample %d of %v", k, got)
+		}
+	}
+	// A row of another width is none, whatever is read of it.
+	if _, err := readWhole(lab(t, text+"0.004,4,4,4.5\n0.005,5,5,5.5,,\n"), Options{Need: need, Lean: true}); err == nil || !strings.Contains(err.Error(), ":6: 4 columns found") {
+		t.Errorf("a short row: %v", err)
+	}
+}
