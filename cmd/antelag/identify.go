@@ -78,7 +78,7 @@ func (o *identifyOptions) run(cmd *cobra.Command, args []string) error {
 	if o.write != "" && unusable != nil {
 		return fmt.Errorf("--write: %w", unusable)
 	}
-	wrote := cmp.Or(saveFile("--write", o.write, o.force, func() []byte { return []byte(rep.Block()) }), savePicture(o.png, o.force, rep.Figure))
+	wrote := cmp.Or(saveFile("--write", o.write, o.force, func() []byte { return []byte(rep.Block()) }), savePicture("--png", o.png, o.force, rep.Figure))
 	if err := o.print(cmd.OutOrStdout(), rep); err != nil {
 		return &failure{err}
 	}

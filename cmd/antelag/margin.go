@@ -17,7 +17,8 @@ type marginOptions struct {
 	sets     []string
 	grid     string
 	measure  string
-	png, csv string
+	png, svg string
+	csv      string
 	options  margin.Options
 	force    bool
 	json     bool
@@ -52,6 +53,7 @@ Exit code: 0 the loop is stable, or the map is drawn, 1 it grows, 2 bad input.
 	f.StringVar(&o.grid, "map", "", "draw a map over two settings, `X=a:b:n,Y=a:b:n`")
 	f.StringVar(&o.measure, "measure", "damping", "show this `MEASURE` in pictures of the map: damping, or radius, the spectral radius")
 	f.StringVar(&o.png, "png", "", "draw the map into this `FILE`, PNG or SVG by its ending")
+	f.StringVar(&o.svg, "svg", "", "draw it into this `FILE` too, so that a page has the one and a paper the other")
 	f.StringVar(&o.csv, "csv", "", "write every cell of the map to this CSV `FILE`")
 	f.IntVar(&o.options.Workers, "workers", 0, "work out `N` rows of the map at once (default: as many as there are cores)")
 	f.BoolVar(&o.force, "force", false, "overwrite existing files")
@@ -104,7 +106,7 @@ func (o *marginOptions) run(cmd *cobra.Command, args []string) error {
 
 // check looks for what is wrong with the flags, before anything is worked out.
 func (o *marginOptions) check(cmd *cobra.Command, scenario string) error {
-	for _, name := range []string{"png", "csv", "measure", "workers"} {
+	for _, name := range []string{"png", "svg", "csv", "measure", "workers"} {
 		if o.grid == "" && cmd.Flags().Changed(name) {
 			return fmt.Errorf("--%s is for a map; there is no --map", name)
 		}
@@ -119,7 +121,7 @@ func (o *marginOptions) check(cmd *cobra.Command, scenario string) error {
 	if err := checkWorkers(o.options.Workers); err != nil {
 		return err
 	}
-	return refuse([]output{{flag: "--csv", path: o.csv}, {flag: "--png", path: o.png, picture: true}}, o.force, theScenario, scenario)
+	return refuse([]output{{flag: "--csv", path: o.csv}, {flag: "--png", path: o.png, picture: true}, {flag: "--svg", path: o.svg, picture: true}}, o.force, theScenario, scenario)
 }
 
 // chart draws the map.
@@ -142,7 +144,7 @@ func (o *marginOptions) chart(cmd *cobra.Command, s *scenarios.Scenario, bar *pr
 	if err != nil {
 		return &failure{err}
 	}
-	if err := cmp.Or(saveFile("--csv", o.csv, o.force, g.CSV), savePicture(o.png, o.force, g.Figure)); err != nil {
+	if err := cmp.Or(saveFile("--csv", o.csv, o.force, g.CSV), savePicture("--png", o.png, o.force, g.Figure), savePicture("--svg", o.svg, o.force, g.Figure)); err != nil {
 		return &failure{err}
 	}
 	if broken {

@@ -129,13 +129,13 @@ func saveFile(flag, path string, force bool, data func() []byte) error {
 	return nil
 }
 
-// savePicture draws what --png asks for, if it does.
-func savePicture(path string, force bool, draw func() figure.Figure) error {
+// savePicture draws what a flag asks for, if it does.
+func savePicture(flag, path string, force bool, draw func() figure.Figure) error {
 	if path == "" {
 		return nil
 	}
 	if err := figure.Save(path, draw(), force); err != nil {
-		return fmt.Errorf("--png: %w", err)
+		return fmt.Errorf("%s: %w", flag, err)
 	}
 	return nil
 }

@@ -82,7 +82,7 @@ func (o *replayOptions) run(cmd *cobra.Command, args []string) error {
 	if err != nil {
 		return err
 	}
-	wrote := cmp.Or(saveFile("--csv", o.csv, o.force, rep.CSV), savePicture(o.png, o.force, rep.Figure))
+	wrote := cmp.Or(saveFile("--csv", o.csv, o.force, rep.CSV), savePicture("--png", o.png, o.force, rep.Figure))
 	if err := o.print(cmd.OutOrStdout(), rep); err != nil {
 		return &failure{err}
 	}

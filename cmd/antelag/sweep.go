@@ -183,7 +183,7 @@ func (o *sweepOptions) draw(sum *study.Summary) error {
 	if sum.Runs == 0 {
 		return nil
 	}
-	return savePicture(o.png, o.force, sum.Picture)
+	return savePicture("--png", o.png, o.force, sum.Picture)
 }
 
 // fileError sorts errors about output files: what stands in the way is for the

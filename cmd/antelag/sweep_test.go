@@ -58,7 +58,7 @@ func TestSweepRefuses(t *testing.T) {
 		{[]string{"sweep", "s.toml", "--draws", "3", "--csv", "s.toml"}, "is the scenario itself"},
 		{[]string{"gather"}, "gather takes one FILE.csv"},
 		{[]string{"gather", "y.csv"}, "there are no shards of it, like y.1-of-7.csv"},
-		{[]string{"gather", "old.csv"}, "old.csv: exists; give --force"},
+		{[]string{"gather", "old.csv"}, "old.csv: file already exists; --force"},
 		{[]string{"gather", "x.csv"}, "shards 1/2, 2/2 are missing or not whole"},
 	} {
 		antelag(t, dir, c.args...).refused(t, c.want)

@@ -71,7 +71,7 @@ func (o *tempoOptions) run(cmd *cobra.Command, args []string) error {
 		err = r.WriteText(cmd.OutOrStdout(), columns(), inColour())
 	}
 	if err == nil && len(r.Points) > 0 {
-		err = savePicture(o.png, o.force, r.Picture)
+		err = savePicture("--png", o.png, o.force, r.Picture)
 	}
 	switch {
 	case err != nil:

@@ -234,5 +234,5 @@ func (o *tuneOptions) files(r *tune.Result) error {
 			return err
 		}
 	}
-	return savePicture(o.png, o.force, r.Picture)
+	return savePicture("--png", o.png, o.force, r.Picture)
 }

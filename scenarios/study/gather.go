@@ -18,7 +18,7 @@ func Gather(path string, force bool, open func(*Study), have func(Row)) (st *Stu
 	if !force {
 		for _, p := range []string{path, path + ".toml"} {
 			if _, err := os.Lstat(p); err == nil {
-				return nil, "", &mismatch{fmt.Errorf("%s: exists; give --force to overwrite it", p)}
+				return nil, "", &mismatch{fmt.Errorf("%s: %w; --force overwrites it", p, fs.ErrExist)}
 			}
 		}
 	}

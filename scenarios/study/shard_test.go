@@ -89,7 +89,7 @@ func TestGather(t *testing.T) {
 		t.Errorf("gathered\n%s\nwhole\n%s", a, b)
 	}
 	_, _, err = Gather(path, false, func(*Study) {}, func(Row) {})
-	says(t, err, "x[1].csv: exists; give --force to overwrite it")
+	says(t, err, "x[1].csv: file already exists; --force overwrites it")
 	if _, _, err = Gather(path, true, func(*Study) {}, func(Row) {}); err != nil {
 		t.Error(err)
 	}

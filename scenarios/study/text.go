@@ -6,7 +6,6 @@ import (
 	"math"
 	"slices"
 	"strings"
-	"text/tabwriter"
 
 	"antelag/rtloop"
 	"antelag/scenarios/accept"
@@ -155,7 +154,7 @@ func (s *Summary) figures(b *strings.Builder, colour bool) {
 		}
 		rows, marks = append(rows, row), append(marks, mark)
 	}
-	WriteTable(b, rows, marks)
+	accept.WriteTable(b, rows, marks)
 }
 
 // extreme writes the figure of one run, or why it has none.
@@ -189,7 +188,7 @@ func (s *Summary) varied(b *strings.Builder) {
 		sp := &st.Spread[i]
 		rows = append(rows, []string{sp.Path, sp.Setting.Format(sp.Low), sp.Setting.Format(sp.High), "drawn"})
 	}
-	WriteTable(b, rows, nil)
+	accept.WriteTable(b, rows, nil)
 }
 
 // tellPoints is how many points of a grid are told on a screen.
@@ -223,7 +222,7 @@ func (s *Summary) points(b *strings.Builder) {
 		}
 		rows = append(rows, row)
 	}
-	WriteTable(b, rows, nil)
+	accept.WriteTable(b, rows, nil)
 }
 
 // worst names the runs in which the figures that count were worst, and how to
@@ -251,28 +250,5 @@ func (s *Summary) worst(b *strings.Builder) {
 	}
 	if main := s.Main(); len(s.Study.Grid) > 0 && s.Study.Draws == 0 && !math.IsNaN(main.Best.Value) {
 		fmt.Fprintf(b, "  best %s (run %d):\n      %s\n", main.Column.Label, main.Best.Run, s.Study.Command(main.Best.Run))
-	}
-}
-
-// WriteTable writes a blank line and rows in columns, the headings first, with a
-// mark before each row but the headings.
-func WriteTable(b *strings.Builder, rows [][]string, marks []string) {
-	var text strings.Builder
-	t := tabwriter.NewWriter(&text, 0, 0, 2, ' ', 0)
-	for _, row := range rows {
-		fmt.Fprintln(t, strings.Join(row, "\t"))
-	}
-	t.Flush() //nolint:errcheck // a Builder does not fail
-	b.WriteString("\n")
-	for i, line := range strings.Split(strings.TrimSuffix(text.String(), "\n"), "\n") {
-		mark := ""
-		switch {
-		case marks == nil:
-		case i == 0:
-			mark = "      "
-		default:
-			mark = marks[i-1] + "  "
-		}
-		fmt.Fprintf(b, "  %s\n", strings.TrimRight(mark+line, " "))
 	}
 }

@@ -116,7 +116,7 @@ func (r *Result) settings(b *strings.Builder) {
 		}
 		rows = append(rows, []string{g.Path, g.Setting.Format(p.start[i]), say(g, r.Best.Values[i]), g.Setting.Format(g.Low), g.Setting.Format(g.High) + how})
 	}
-	study.WriteTable(b, rows, nil)
+	accept.WriteTable(b, rows, nil)
 }
 
 // say writes a setting in four digits: more are not worth it.
@@ -148,7 +148,7 @@ func (r *Result) measures(b *strings.Builder, colour bool) {
 		}
 		marks = append(marks, mark)
 	}
-	study.WriteTable(b, rows, marks)
+	accept.WriteTable(b, rows, marks)
 }
 
 // room says how close a value is to its limit.
@@ -206,7 +206,7 @@ func (r *Result) front(b *strings.Builder) {
 		}
 		rows = append(rows, append(row, p.Column.Format(c.Figure), p.Measures[i].Say(c.Measured[i]), note))
 	}
-	study.WriteTable(b, rows, nil)
+	accept.WriteTable(b, rows, nil)
 }
 
 // thinned keeps at most n of many, both ends among them.
