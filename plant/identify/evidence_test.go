@@ -37,8 +37,6 @@ func (k known) own(r *Result) *Fit {
 	return r.LagDelay
 }
 
-var levels = []float64{-60, -40, -26}
-
 // coverage is the share of seeds for which the truth lies within 1.96 standard
 // errors: 0.95 if they are honest.
 type coverage struct {
