@@ -129,7 +129,7 @@ func defaultText(s *kind.Setting) string {
 // for what has none a value in the middle of the sensible range.
 func (c Chapter) Example(k *kind.Kind) string {
 	var out strings.Builder
-	fmt.Fprintf(&out, "%s\n%s = %s\n", c.Header, c.Key, quote(k.Name))
+	fmt.Fprintf(&out, "%s\n%s = %s\n", c.Header, c.Key, Quote(k.Name))
 	for i := range k.Settings {
 		s := &k.Settings[i]
 		if value, ok := s.ExampleValue(); ok {

@@ -31,7 +31,7 @@ func (s *Scenario) CheckLane(name string) error {
 // reads as a scenario again, with version, lane and start.
 func (s *Scenario) Provenance(version, lane string, start time.Time) string {
 	return s.Resolved() + fmt.Sprintf("\n[provenance]\nversion = %s\nscenario = %s\nlane = %s\nstart = %s\n",
-		quote(version), quote(s.Name), quote(lane), start.UTC().Format(time.RFC3339))
+		Quote(version), Quote(s.Name), Quote(lane), start.UTC().Format(time.RFC3339))
 }
 
 // Resolved writes the whole resolved scenario so that it reads as the same

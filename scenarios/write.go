@@ -17,7 +17,7 @@ import (
 // were written.
 func (s *Scenario) WriteTo(w io.Writer) (int64, error) {
 	p := &printer{driven: s.Excitation.Drives.Dim()}
-	p.printf("title = %s\n", quote(s.Title))
+	p.printf("title = %s\n", Quote(s.Title))
 	p.section("[loop]", &loopSection, s.Loop)
 	if sub := s.Substructure; sub != nil {
 		p.section("[substructure]", sub.Kind, sub.Values)
@@ -27,15 +27,15 @@ func (s *Scenario) WriteTo(w io.Writer) (int64, error) {
 	}
 	p.printf("\n[excitation]\n")
 	p.settings(&excitationSection, s.excitationValues())
-	p.printf("kind = %s\n", quote(s.Excitation.Kind.Name))
+	p.printf("kind = %s\n", Quote(s.Excitation.Kind.Name))
 	p.settings(s.Excitation.Kind, s.Excitation.Part.Values)
 	for _, c := range s.Channels {
 		p.channel(c, s.Substructure != nil)
 	}
 	for _, l := range s.Lanes {
-		p.printf("\n[[lane]]\nname = %s\n", quote(l.Name))
+		p.printf("\n[[lane]]\nname = %s\n", Quote(l.Name))
 		if l.Channel != "" {
-			p.printf("channel = %s\n", quote(l.Channel))
+			p.printf("channel = %s\n", Quote(l.Channel))
 		}
 		p.part("[lane.compensator]", l.Compensator)
 	}
@@ -71,7 +71,7 @@ func (s *Scenario) writeSpread(p *printer) {
 		}
 		low := exact(&at.Setting, sp.Low)
 		high := exact(&at.Setting, sp.High)
-		p.printf("%s = [%s, %s]\n", quote(sp.Path), low, high)
+		p.printf("%s = [%s, %s]\n", Quote(sp.Path), low, high)
 	}
 }
 
@@ -84,7 +84,7 @@ type printer struct {
 func (p *printer) printf(format string, args ...any) { fmt.Fprintf(p, format, args...) }
 
 func (p *printer) channel(c Channel, between bool) {
-	p.printf("\n[[channel]]\nname = %s\n", quote(c.Name))
+	p.printf("\n[[channel]]\nname = %s\n", Quote(c.Name))
 	if between {
 		p.printf("between = [%d, %d]\n", c.Between[0], c.Between[1])
 	}
@@ -98,7 +98,7 @@ func (p *printer) channel(c Channel, between bool) {
 }
 
 func (p *printer) part(header string, part Part) {
-	p.printf("\n%s\nkind = %s\n", header, quote(part.Kind.Name))
+	p.printf("\n%s\nkind = %s\n", header, Quote(part.Kind.Name))
 	p.settings(part.Kind, part.Values)
 }
 
@@ -122,7 +122,7 @@ func (p *printer) settings(k *kind.Kind, v kind.Values) {
 func valueText(s *kind.Setting, v kind.Value) string {
 	switch s.Type {
 	case kind.WordType, kind.TextType:
-		return quote(v.Text)
+		return Quote(v.Text)
 	case kind.ListType:
 		return list(s, v.List)
 	case kind.MatrixType:
@@ -150,13 +150,13 @@ func exact(s *kind.Setting, v float64) string {
 	}
 	text := quantity.Exact(v, s.Dim)
 	if s.Dim != quantity.None {
-		return quote(text)
+		return Quote(text)
 	}
 	return text
 }
 
-// quote writes a TOML basic string.
-func quote(s string) string {
+// Quote writes a TOML basic string.
+func Quote(s string) string {
 	var b strings.Builder
 	b.WriteByte('"')
 	for _, r := range s {

@@ -2,7 +2,6 @@ package tui
 
 import (
 	"context"
-	"fmt"
 	"time"
 
 	"github.com/gdamore/tcell/v2"
@@ -39,9 +38,9 @@ const frames = 20
 // ends. The terminal is left as it was found, whatever happens; a panic comes
 // back as a *Panic. An error that is none means that there was no dashboard.
 func Run(ctx context.Context, s *scenarios.Scenario) error {
-	screen, err := tcell.NewScreen()
+	screen, err := newScreen()
 	if err != nil {
-		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
+		return err
 	}
 	return run(ctx, s, screen, nil)
 }
@@ -53,8 +52,8 @@ func run(ctx context.Context, s *scenarios.Scenario, term terminal, clock pace.C
 		return err
 	}
 	defer session.close()
-	if err := term.Init(); err != nil {
-		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
+	if err := setUp(term); err != nil {
+		return err
 	}
 	return newApp(session, term).loop(ctx)
 }

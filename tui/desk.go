@@ -1,6 +1,7 @@
 package tui
 
 import (
+	"fmt"
 	"runtime/debug"
 
 	"github.com/gdamore/tcell/v2"
@@ -20,6 +21,25 @@ type desk struct {
 
 func newDesk(term terminal) desk {
 	return desk{term: term, board: NewDashboard(), grid: canvas.NewGrid(0, 0), palette: paletteFor(term.Colors())}
+}
+
+const noDesk = "this terminal cannot show the dashboard: %w"
+
+// newScreen finds the terminal that the program runs on.
+func newScreen() (tcell.Screen, error) {
+	screen, err := tcell.NewScreen()
+	if err != nil {
+		return nil, fmt.Errorf(noDesk, err)
+	}
+	return screen, nil
+}
+
+// setUp makes a terminal ready to be drawn on; sit gives it back.
+func setUp(term terminal) error {
+	if err := term.Init(); err != nil {
+		return fmt.Errorf(noDesk, err)
+	}
+	return nil
 }
 
 // sit gives body the events of a terminal that has been set up, and leaves the

@@ -23,25 +23,32 @@ func BenchmarkLateness(b *testing.B) {
 	}
 }
 
-func lateness(b *testing.B, draws, edits bool) {
-	s := load(b, scenarios.Default, "loop.duration=86400 s")
-	session, err := newSession(s, nil)
+// running is a dashboard of the default scenario on a simulated screen, its loop
+// going on for so long.
+func running(b *testing.B, duration string, clock pace.Clock, w, h int) *app {
+	session, err := newSession(load(b, scenarios.Default, "loop.duration="+duration), clock)
 	if err != nil {
 		b.Fatal(err)
 	}
-	defer session.close()
-	judged := load(b, scenarios.Default)
-	session.judge.cancel()
+	b.Cleanup(session.close)
 	sim := tcell.NewSimulationScreen("UTF-8")
 	if err := sim.Init(); err != nil {
 		b.Fatal(err)
 	}
-	defer sim.Fini()
-	sim.SetSize(200, 60)
+	b.Cleanup(sim.Fini)
+	sim.SetSize(w, h)
 	a := newApp(session, sim)
 	a.page = pageDashboard
 	session.engine.start()
 	session.setPaused(false)
+	return a
+}
+
+func lateness(b *testing.B, draws, edits bool) {
+	judged := load(b, scenarios.Default)
+	a := running(b, "86400 s", nil, 200, 60)
+	session := a.session
+	session.judge.cancel()
 	frame := time.NewTicker(time.Second / frames)
 	defer frame.Stop()
 	number := 0

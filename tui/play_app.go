@@ -24,9 +24,9 @@ type Moment struct {
 // Play plays a log through the dashboard's panels until it is quit or ctx ends.
 // It leaves the terminal as Run does, and its errors are like those of Run.
 func Play(ctx context.Context, path string, o PlayOptions, all Overview) error {
-	screen, err := tcell.NewScreen()
+	screen, err := newScreen()
 	if err != nil {
-		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
+		return err
 	}
 	return play(ctx, path, o, all, screen)
 }
@@ -44,8 +44,8 @@ func play(ctx context.Context, path string, o PlayOptions, all Overview, term te
 		return err
 	}
 	defer p.close()
-	if err := term.Init(); err != nil {
-		return fmt.Errorf("this terminal cannot show the dashboard: %w", err)
+	if err := setUp(term); err != nil {
+		return err
 	}
 	a := &playApp{player: p, desk: newDesk(term)}
 	return a.desk.sit(func(events <-chan tcell.Event) error { return a.loop(ctx, events, all) })

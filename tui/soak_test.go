@@ -9,8 +9,6 @@ import (
 	"testing"
 	"time"
 
-	"github.com/gdamore/tcell/v2"
-
 	"antelag/scenarios"
 )
 
@@ -35,23 +33,9 @@ func (c *soakClock) Sleep(until time.Duration) {
 // memory that the system counts; with -benchtime 8x that is a working day.
 func BenchmarkSoak(b *testing.B) {
 	b.Chdir(b.TempDir())
-	s := load(b, scenarios.Default, "loop.duration="+strconv.Itoa(3600*b.N)+" s")
-	session, err := newSession(s, &soakClock{})
-	if err != nil {
-		b.Fatal(err)
-	}
-	defer session.close()
 	judged := load(b, scenarios.Default)
-	sim := tcell.NewSimulationScreen("UTF-8")
-	if err := sim.Init(); err != nil {
-		b.Fatal(err)
-	}
-	defer sim.Fini()
-	sim.SetSize(120, 40)
-	a := newApp(session, sim)
-	a.page = pageDashboard
-	session.engine.start()
-	session.setPaused(false)
+	a := running(b, strconv.Itoa(3600*b.N)+" s", &soakClock{}, 120, 40)
+	session := a.session
 	frame := time.NewTicker(time.Second / frames)
 	defer frame.Stop()
 	const hour = 3600 * 2048

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"strconv"
 )
 
@@ -156,31 +157,14 @@ func (s *lines) fields(into [][]byte) ([][]byte, error) {
 		}
 		return into, nil
 	}
-	return appendBlank(into, s.text), nil
+	return slices.AppendSeq(into, bytes.FieldsSeq(s.text)), nil
 }
 
 // appendCell appends what stands between two separators.
 func appendCell(into [][]byte, cell []byte) [][]byte {
 	n := len(into)
-	if into = appendBlank(into, cell); len(into) == n {
+	if into = slices.AppendSeq(into, bytes.FieldsSeq(cell)); len(into) == n {
 		return append(into, nil)
-	}
-	return into
-}
-
-// appendBlank appends the words of text between blanks and tabs.
-func appendBlank(into [][]byte, text []byte) [][]byte {
-	start := -1
-	for i, c := range text {
-		switch blank := c == ' ' || c == '\t'; {
-		case blank && start >= 0:
-			into, start = append(into, text[start:i]), -1
-		case !blank && start < 0:
-			start = i
-		}
-	}
-	if start >= 0 {
-		into = append(into, text[start:])
 	}
 	return into
 }

@@ -3,6 +3,7 @@ package runlog
 import (
 	"bytes"
 	"fmt"
+	"slices"
 	"unicode/utf8"
 
 	"golang.org/x/text/encoding/charmap"
@@ -201,7 +202,7 @@ func decimalMark(sep byte) byte {
 // split appends the cells of a line. Separators inside quotes are none.
 func split(text []byte, sep byte, into [][]byte) [][]byte {
 	if sep == ' ' {
-		return splitBlank(text, into)
+		return slices.AppendSeq(into, bytes.FieldsSeq(text))
 	}
 	from, inside := 0, false
 	for i, c := range text {
@@ -214,23 +215,6 @@ func split(text []byte, sep byte, into [][]byte) [][]byte {
 		}
 	}
 	return append(into, text[from:])
-}
-
-// splitBlank appends the words between blanks and tabs.
-func splitBlank(text []byte, into [][]byte) [][]byte {
-	from := -1
-	for i, c := range text {
-		switch blank := c == ' ' || c == '\t' || c == '\r'; {
-		case blank && from >= 0:
-			into, from = append(into, text[from:i]), -1
-		case !blank && from < 0:
-			from = i
-		}
-	}
-	if from >= 0 {
-		into = append(into, text[from:])
-	}
-	return into
 }
 
 // heading finds the names of the columns, and their units, in what stands before

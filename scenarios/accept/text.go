@@ -5,7 +5,6 @@ import (
 	"io"
 	"slices"
 	"strings"
-	"unicode"
 
 	"antelag/rtloop"
 	"antelag/scenarios"
@@ -28,7 +27,7 @@ var labels = map[string]string{
 func (v *Verdict) WriteText(w io.Writer, colour bool) error {
 	p := &page{colour: colour}
 	first := &v.Lanes[0]
-	p.printf("%s: %s\n", printable(v.Scenario), printable(v.Title))
+	p.printf("%s: %s\n", Printable(v.Scenario), Printable(v.Title))
 	p.printf("%s\n", v.conditions())
 	p.printf("\n%s  %s lane: %s\n", p.verdict(first), first.Name, ending(first, v.Time))
 	p.limits(first)
@@ -41,16 +40,6 @@ func (v *Verdict) WriteText(w io.Writer, colour bool) error {
 	}
 	_, err := io.WriteString(w, p.String())
 	return err
-}
-
-// printable keeps what a file gave for a name from moving the cursor.
-func printable(s string) string {
-	return strings.Map(func(r rune) rune {
-		if unicode.IsPrint(r) {
-			return r
-		}
-		return ' '
-	}, s)
 }
 
 func (v *Verdict) conditions() string {

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"strings"
 	"text/tabwriter"
+	"unicode"
 
 	"antelag/rtloop"
 	"antelag/scenarios/kind"
@@ -38,7 +39,14 @@ func (l *Lane) Figure(limit string) (value float64, dim quantity.Dim) {
 }
 
 // Printable keeps what a file gave for a name from moving the cursor.
-func Printable(s string) string { return printable(s) }
+func Printable(s string) string {
+	return strings.Map(func(r rune) rune {
+		if unicode.IsPrint(r) {
+			return r
+		}
+		return ' '
+	}, s)
+}
 
 // WriteTable writes a blank line and then rows of cells in columns, the headings
 // first. Each row but the headings may have a mark of four letters in front, which

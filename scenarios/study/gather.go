@@ -1,13 +1,15 @@
 package study
 
 import (
-	"bufio"
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"os"
 	"path/filepath"
 	"strings"
+
+	"antelag/scenarios/outfile"
 )
 
 // Gather puts the tables of all shards of a study, which lie beside path, into
@@ -34,14 +36,14 @@ func Gather(path string, force bool, open func(*Study), have func(Row)) (st *Stu
 		return nil, "", err
 	}
 	open(st)
-	err = writeAtomic(path, func(w *bufio.Writer) error {
-		if _, err := w.WriteString(st.Header() + "\n"); err != nil {
+	err = outfile.Stream(path, true, func(w io.Writer) error {
+		if _, err := io.WriteString(w, st.Header()+"\n"); err != nil {
 			return err
 		}
 		return st.copyParts(path, n, w, have)
 	})
 	if err == nil {
-		err = writeWhole(path+".toml", provenance)
+		err = outfile.Write(path+".toml", []byte(provenance), true)
 	}
 	return st, version, err
 }
@@ -88,7 +90,7 @@ func missingShards(path string, absent []string) error {
 }
 
 // copyParts appends the rows of every shard in turn.
-func (st *Study) copyParts(path string, n int, w *bufio.Writer, have func(Row)) error {
+func (st *Study) copyParts(path string, n int, w io.Writer, have func(Row)) error {
 	var absent []string
 	var line []byte
 	for i := range n {

@@ -7,8 +7,8 @@ import (
 	"io"
 	"io/fs"
 	"os"
-	"path/filepath"
-	"strings"
+
+	"antelag/scenarios/outfile"
 )
 
 // Journal is a CSV that grows at its end only, with its provenance beside it,
@@ -50,6 +50,8 @@ func (j *Journal) resume(provenance string, force bool, check, row func(line str
 	switch info, err := os.Stat(j.path); {
 	case err != nil:
 		return err
+	case !info.Mode().IsRegular():
+		return fmt.Errorf("%s: is no ordinary file; a table that can be gone on with needs one", j.path)
 	case info.Size() == 0: // nothing in it to lose
 		return fs.ErrNotExist
 	}
@@ -142,7 +144,7 @@ func (j *Journal) create(provenance string) error {
 		err = f.Truncate(0)
 	}
 	if err == nil {
-		err = writeWhole(j.path+".toml", provenance)
+		err = outfile.Write(j.path+".toml", []byte(provenance), true)
 	}
 	if err == nil {
 		_, err = f.WriteString(j.header + "\n")
@@ -168,43 +170,3 @@ func (j *Journal) Path() string { return j.path }
 
 // Close closes the journal.
 func (j *Journal) Close() error { return j.file.Close() }
-
-// writeWhole writes a file so that it is there whole or not at all.
-func writeWhole(path, text string) error {
-	return writeAtomic(path, func(w *bufio.Writer) error {
-		_, err := w.WriteString(text)
-		return err
-	})
-}
-
-// writeAtomic is writeWhole for what is written piece by piece.
-func writeAtomic(path string, write func(w *bufio.Writer) error) error {
-	f, err := os.CreateTemp(filepath.Dir(path), "."+filepath.Base(path)+".*")
-	if err != nil {
-		return renamed(err, path)
-	}
-	w := bufio.NewWriterSize(f, 1<<16)
-	err = write(w)
-	for _, finish := range []func() error{w.Flush, func() error { return f.Chmod(0o644) }, f.Close} {
-		if e := finish(); err == nil {
-			err = e
-		}
-	}
-	if err == nil {
-		err = os.Rename(f.Name(), path)
-	}
-	if err != nil {
-		os.Remove(f.Name()) //nolint:errcheck // what it is about has failed already
-	}
-	return renamed(err, path)
-}
-
-// renamed makes an error speak of the file that was meant, not of its temporary
-// name.
-func renamed(err error, path string) error {
-	var p *fs.PathError
-	if errors.As(err, &p) && strings.HasPrefix(filepath.Base(p.Path), "."+filepath.Base(path)+".") {
-		return &fs.PathError{Op: "write", Path: path, Err: p.Err}
-	}
-	return err
-}

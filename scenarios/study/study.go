@@ -81,7 +81,7 @@ func axes(s *scenarios.Scenario, texts []string) ([]Axis, error) {
 	for _, text := range texts {
 		a, err := ParseAxis(s, text)
 		if err != nil {
-			return nil, err
+			return nil, fmt.Errorf("--over: %w", err)
 		}
 		for _, other := range out {
 			if Same(s, a.Path, other.Path) {

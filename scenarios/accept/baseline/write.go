@@ -4,9 +4,10 @@ import (
 	"fmt"
 	"io"
 	"regexp"
-	"strconv"
 	"strings"
-	"unicode"
+
+	"antelag/scenarios"
+	"antelag/scenarios/accept"
 )
 
 // format is the version of the form of the file.
@@ -21,8 +22,8 @@ const heading = `# The figures of %s, kept by antelag check --record.
 // them compare well. name is that of the scenario, for the reader.
 func (b *Baseline) WriteTo(w io.Writer, name string) error {
 	p := &printer{}
-	p.printf(heading, printable(name))
-	p.printf("format = %d\nversion = %s\n", format, quote(b.Version))
+	p.printf(heading, accept.Printable(name))
+	p.printf("format = %d\nversion = %s\n", format, scenarios.Quote(b.Version))
 	lane, channel := "", ""
 	for i := range b.Entries {
 		e := &b.Entries[i]
@@ -37,7 +38,7 @@ func (b *Baseline) WriteTo(w io.Writer, name string) error {
 	}
 	p.printf("\n# What the scenario was set to then, defaults included.\n[settings]\n")
 	for _, s := range b.Settings {
-		p.printf("%s = %s\n", quote(s.Path), quote(s.Text))
+		p.printf("%s = %s\n", scenarios.Quote(s.Path), scenarios.Quote(s.Text))
 	}
 	_, err := io.WriteString(w, p.String())
 	return err
@@ -49,12 +50,12 @@ func (p *printer) printf(format string, args ...any) { fmt.Fprintf(p, format, ar
 
 func (p *printer) entry(e *Entry) {
 	if e.word() {
-		p.printf("%s = %s\n", e.Figure, quote(e.Word))
+		p.printf("%s = %s\n", e.Figure, scenarios.Quote(e.Word))
 		return
 	}
 	dim, _, _ := described(e.Figure)
 	p.printf("%s = { was = %s, within = %s }\n", e.Figure,
-		quote(value(e.Was, dim, fileDigits)), quote(value(e.Within, dim, 2)))
+		scenarios.Quote(value(e.Was, dim, fileDigits)), scenarios.Quote(value(e.Within, dim, 2)))
 }
 
 var bare = regexp.MustCompile(`^[A-Za-z0-9_-]+$`)
@@ -64,34 +65,5 @@ func key(name string) string {
 	if bare.MatchString(name) {
 		return name
 	}
-	return quote(name)
-}
-
-// quote writes a TOML basic string.
-func quote(s string) string {
-	var b strings.Builder
-	b.WriteByte('"')
-	for _, r := range s {
-		switch {
-		case r == '"' || r == '\\':
-			b.WriteByte('\\')
-			b.WriteRune(r)
-		case r < 0x20 || r == 0x7f:
-			b.WriteString(`\u00` + strconv.FormatInt(0x100|int64(r), 16)[1:])
-		default:
-			b.WriteRune(r)
-		}
-	}
-	b.WriteByte('"')
-	return b.String()
-}
-
-// printable keeps a file's name from ending the comment that it stands in.
-func printable(s string) string {
-	return strings.Map(func(r rune) rune {
-		if unicode.IsPrint(r) {
-			return r
-		}
-		return ' '
-	}, s)
+	return scenarios.Quote(name)
 }

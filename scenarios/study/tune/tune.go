@@ -107,7 +107,7 @@ func (p *Problem) readRanges() error {
 	for _, text := range p.Over {
 		r, err := study.ParseRange(p.Scenario, text)
 		if err != nil {
-			return err
+			return fmt.Errorf("--over: %w", err)
 		}
 		for _, other := range p.Ranges {
 			if study.Same(p.Scenario, r.Path, other.Path) {
