@@ -20,7 +20,7 @@ func (r *Report) Figure() figure.Figure {
 		r.panel("amplitude of measured over target", figure.Axis{Label: "amplitude", Unit: "%"}, 100, func(w *Window) rtloop.Figure { return w.AmplitudeRatio }),
 		r.panel("tracking error in windows of "+window, figure.Axis{Label: "error, rms", Unit: "%"}, 100, func(w *Window) rtloop.Figure { return w.NRMSE }),
 	}
-	panels[0].Levels = []figure.Level{{Name: "in time", Value: 0}}
+	panels[0].Levels = []figure.Level{{Reference: true, Name: "in time", Value: 0}}
 	if r.Energy.Injected.Defined() {
 		panels = append(panels, r.panel("energy put in by the tracking error in windows of "+window, figure.Axis{Label: "energy", Unit: "J"}, 1,
 			func(w *Window) rtloop.Figure { return w.Injected }))
